@@ -1,0 +1,343 @@
+"""What a study found, as plain figures: the only thing that text, JSON and the sheet are made from."""
+
+from dataclasses import dataclass
+from typing import Literal
+
+from relaycfg.model.device import Device, Function
+from relaycfg.model.settings import Settings, Stage
+from relaycfg.model.site import Site
+
+Status = Literal["converged", "unresolved"]
+Flag = Literal["below band", "above band", "unstable", "several solutions"]
+Harm = Literal["none", "high volts", "low volts", "both"]
+Operation = Literal["in time", "late", "none"]
+
+
+@dataclass(frozen=True)
+class BoardVolts:
+    """One board in one state: magnitudes [V], angles [deg] against the EMF of L1, neutral current [A]."""
+
+    l_n_v: tuple[float, ...]
+    l_n_deg: tuple[float, ...]
+    l_l_v: tuple[float, ...]
+    v0_v: float
+    n_earth_v: float | None
+    pe_earth_v: float | None
+    neutral_a: float | None
+
+
+@dataclass(frozen=True)
+class RelayVolts:
+    """What the relay's terminals carry in one state [V]; unbalance in percent by definition name."""
+
+    l_n_v: tuple[float, ...]
+    l_l_v: tuple[float, ...]
+    v0_v: float
+    n_pe_v: float | None
+    unbalance_percent: dict[str, float]
+
+
+@dataclass(frozen=True)
+class BreakRow:
+    """One break place, joint and load state."""
+
+    at: str
+    conductor: str
+    joint_ohm: float | None
+    state: str
+    status: Status
+    flags: tuple[Flag, ...]
+    joint_a: float
+    joint_v: float
+    joint_w: float
+    relays: dict[str, RelayVolts]
+    boards: dict[str, BoardVolts]
+    all_impedance: "BreakRow | None"
+
+
+@dataclass(frozen=True)
+class Percentiles:
+    """5, 50, 95 and 100 percent points over the sampled states (highest L-N of any board, V0 at the tap, ...)."""
+
+    name: str
+    unit: str
+    p5: float
+    p50: float
+    p95: float
+    largest: float
+
+
+@dataclass(frozen=True)
+class Share:
+    """A share of modelled load states with its 95 percent Wilson interval in 0..1; not a probability of damage."""
+
+    count: int
+    of: int
+    low: float
+    high: float
+
+    @property
+    def percent(self) -> float:
+        """The share in percent."""
+        return 100 * self.count / self.of if self.of else 0.0
+
+
+@dataclass(frozen=True)
+class WorstState:
+    """A state an engineer can re-enter: seed index and what it does."""
+
+    index: int
+    board: str
+    line: str
+    volts: float
+    loads_on: int
+
+
+@dataclass(frozen=True)
+class ElementSight:
+    """How one element sees the states of one place: share seen at its settings, and the first delay that trips."""
+
+    function: Function
+    share: Share
+    fastest_s: float | None
+
+
+@dataclass(frozen=True)
+class PlaceSummary:
+    """One break place over all sampled states."""
+
+    at: str
+    conductor: str
+    seen: bool
+    """Whether the relay's tap lies downstream of the break and the relay measures a quantity that moves."""
+    why_not: str
+    samples: int
+    unresolved: int
+    flags: dict[str, int]
+    classes: dict[str, Share]
+    """Keys "harm / operation", such as "high volts / in time"; only with settings."""
+    harmful: Share
+    undetected: Share
+    """No harm and no operation: an undetected break, never a pass."""
+    percentiles: tuple[Percentiles, ...]
+    worst: tuple[WorstState, ...]
+    elements: tuple[ElementSight, ...]
+    boards_harmed: tuple[str, ...]
+    boards_healthy: tuple[str, ...]
+    not_disconnected: tuple[str, ...]
+    """Boards harmed by this break that the relay's switch does not disconnect."""
+    touch_v: float | None
+    """Largest PE-to-remote-earth voltage of any board over the states."""
+
+
+@dataclass(frozen=True)
+class BreakStudy:
+    """Everything ``breaks`` shows."""
+
+    rows: tuple[BreakRow, ...]
+    summaries: tuple[PlaceSummary, ...]
+    seen_places: int
+    places: int
+    notes: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Bound:
+    """One bound of one setting: what it may not go below or above, why, and the arithmetic to follow by hand."""
+
+    of: Literal["pickup", "delay"]
+    side: Literal["not below", "not above"]
+    value: float
+    unit: str
+    case: str
+    arithmetic: str
+    source: str
+
+
+@dataclass(frozen=True)
+class Margins:
+    """Distances of one stage to its nearest failing must-hold case and to the nearest state it must clear.
+
+    One unit is 1 percent of U0 (1 point for 47) together with 10 percent of time. None where nothing limits.
+    """
+
+    security_v: float | None
+    security_s: float | None
+    security_units: float | None
+    security_case: str
+    dependability_v: float | None
+    dependability_s: float | None
+    dependability_units: float | None
+    dependability_case: str
+
+
+@dataclass(frozen=True)
+class StageResult:
+    """A stage as judged: figures in volts and percent, bounds, margins and the reason in one sentence."""
+
+    stage: Stage
+    pickup_percent: float | None
+    base: str
+    marked: float | None
+    """The figure on the device's own scale."""
+    marked_unit: str
+    pickup_low: float
+    pickup_high: float
+    """Error band of the pickup."""
+    clearing_s: float
+    """Longest total time: delay, timing error, window, refresh, output, coil and breaker."""
+    secure: bool
+    bounds: tuple[Bound, ...]
+    margins: Margins | None
+    adds: Share | None
+    """Harmful states that this stage clears in time on its own."""
+    reason: str
+
+
+@dataclass(frozen=True)
+class CaseResult:
+    """A must-hold (or must-trip) case played through the relay."""
+
+    number: int
+    name: str
+    expect: Literal["hold", "trip", "either"]
+    outcome: Literal["hold", "trip"]
+    passed: bool
+    figures: str
+    source: str
+    status: str
+    operated: tuple[str, ...]
+    """Stages that tripped, with the time, such as "27 stage 1 at 0.53 s (dip on L2)"."""
+    highest_l_n_v: float
+    lowest_l_n_v: float
+    highest_v0_v: float
+    margin_v: float | None
+    margin_s: float | None
+    nearest: str
+    """Stage nearest to operating and the course it is for."""
+
+
+@dataclass(frozen=True)
+class CurveStep:
+    """One step of a ride-through or withstand curve and the case or state behind it."""
+
+    pickup: float
+    seconds: float | None
+    behind: str
+
+
+@dataclass(frozen=True)
+class Corridor:
+    """The corridor of one element: R from must-hold cases, W from break states, and the states as dots."""
+
+    function: Function
+    unit: str
+    ride_through: tuple[CurveStep, ...]
+    """R at the stage's nominal pickup, errors included; rising pickup severity. None seconds: for ever."""
+    withstand: tuple[CurveStep, ...]
+    """Time left to the relay at that severity (deadline less measuring, output, coil and breaker)."""
+    cases: tuple[CurveStep, ...]
+    """Each must-hold case as one dot: severity, seconds, number and name."""
+    standing: float
+    standing_case: str
+
+
+@dataclass(frozen=True)
+class ClosedGroup:
+    """Harmful break states that no secure setting clears, grouped by what blocks them."""
+
+    blockers: dict[str, str]
+    """Element to the case (or limit) that blocks it."""
+    states: int
+    core: bool
+    place: str
+    worst_l_n_v: float
+    overlap_v: float | None
+    overlap_s: float | None
+    sentence: str
+
+
+@dataclass(frozen=True)
+class Finding:
+    """Something to act on. ``exception`` findings make the exit code 1."""
+
+    severity: Literal["exception", "warning", "note"]
+    about: str
+    sentence: str
+    do: str
+    if_left: str
+
+    @property
+    def exception(self) -> bool:
+        """Whether this is an exception against the stated criteria."""
+        return self.severity == "exception"
+
+
+@dataclass(frozen=True)
+class TestPoint:
+    """One line of the test schedule, from the settable values."""
+
+    element: str
+    line: str
+    inject: str
+    expect: str
+    accept_low: float
+    accept_high: float
+    unit: str
+    avoid: str
+
+
+@dataclass(frozen=True)
+class WorkedBreak:
+    """One break worked by hand: three admittances, the displacement and three volts."""
+
+    place: str
+    admittance_s: tuple[complex, ...]
+    emf_v: float
+    shift_v: complex
+    l_n_v: tuple[float, ...]
+    solver_l_n_v: tuple[float, ...]
+
+
+@dataclass(frozen=True)
+class PlanePoint:
+    """A break state on the neutral-displacement plane: V0 phasor [V] and whether it is cleared in time."""
+
+    v0: complex
+    harm: Harm
+    operation: Operation
+
+
+@dataclass(frozen=True)
+class Study:
+    """The whole result of derive or check on one site."""
+
+    site: Site
+    device: Device
+    kind: Literal["derive", "check"]
+    seed: int
+    samples: int
+    settings: Settings
+    stages: tuple[StageResult, ...]
+    cases: tuple[CaseResult, ...]
+    breaks: BreakStudy
+    corridors: tuple[Corridor, ...]
+    closed: tuple[ClosedGroup, ...]
+    never_cleared: int
+    findings: tuple[Finding, ...]
+    tests: tuple[TestPoint, ...]
+    worked: WorkedBreak | None
+    plane: tuple[PlanePoint, ...]
+    displacement_standing_v: float
+    feed_range_v: tuple[tuple[str, float, float], ...]
+    """Auxiliary feeds taken from the system: what, lowest and highest volts over the break states."""
+    smallest_asymmetry: dict[str, float | None]
+    """Element set to the smallest load ratio k in k:1:1 that it sees behind a stiff source, None where never."""
+    coverage: dict[str, Share]
+    """Share of harmful states cleared in time by "59", "27", "59 + 27", "all", and "seen by 59N"."""
+    input_digest: str
+
+    @property
+    def exceptions(self) -> int:
+        """Number of exceptions against the stated criteria."""
+        return sum(f.exception for f in self.findings)

@@ -1,0 +1,73 @@
+"""Figures as text: every printed number is rounded here, once."""
+
+import math
+
+ABSENT = "-"
+FOR_EVER = "for ever"
+FEW_SECONDS = 0.1
+"""Below this, seconds get a third decimal [s]."""
+
+
+def volts(value: float | None) -> str:
+    """Volts to one decimal."""
+    return _decimals(value, 1)
+
+
+def amperes(value: float | None) -> str:
+    """Amperes to one decimal."""
+    return _decimals(value, 1)
+
+
+def watts(value: float | None) -> str:
+    """Watts to whole watts, thousands apart."""
+    return ABSENT if _absent(value) else count(round(value or 0.0))
+
+
+def ohms(value: float | None) -> str:
+    """Ohms to three significant digits."""
+    return ABSENT if _absent(value) else f"{value:.3g}"
+
+
+def percent(value: float | None) -> str:
+    """Percent (or percent points) to one decimal."""
+    return _decimals(value, 1)
+
+
+def seconds(value: float | None) -> str:
+    """Seconds to two decimals, three below 0.1 s; infinite is "for ever"."""
+    if value is not None and math.isinf(value):
+        return FOR_EVER
+    return _decimals(value, 3 if value is not None and abs(value) < FEW_SECONDS else 2)
+
+
+def ratio(value: float | None) -> str:
+    """A ratio such as drop-out over pickup: up to three decimals, no trailing zeros."""
+    return ABSENT if _absent(value) else f"{value:.3f}".rstrip("0").rstrip(".")
+
+
+def count(value: int) -> str:
+    """A whole number with its thousands apart."""
+    return f"{value:,}".replace(",", " ")
+
+
+def plain(value: float | None) -> str:
+    """A figure of any other unit, four significant digits."""
+    return ABSENT if _absent(value) else f"{value:.4g}"
+
+
+def with_unit(value: float | None, unit: str) -> str:
+    """A figure rounded as its unit asks, followed by the unit; a lone dash where there is none."""
+    figure = {"V": volts, "s": seconds, "%": percent, "A": amperes, "W": watts, "ohm": ohms, "units": percent}
+    rounded = figure.get(unit, plain)(value)
+    return rounded if rounded in (ABSENT, FOR_EVER) else f"{rounded} {unit}".rstrip()
+
+
+def _absent(value: float | None) -> bool:
+    return value is None or not math.isfinite(value)
+
+
+def _decimals(value: float | None, digits: int) -> str:
+    if value is None or not math.isfinite(value):
+        return ABSENT
+    text = f"{value:.{digits}f}"
+    return text.lstrip("-") if float(text) == 0 else text
