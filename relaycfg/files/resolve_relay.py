@@ -1,0 +1,125 @@
+"""The relay with its feeds and times, and what connected equipment stands."""
+
+from relaycfg.files.device import resolve_device
+from relaycfg.files.device_form import DeviceForm
+from relaycfg.files.ledger import Ledger
+from relaycfg.files.relay_form import EquipmentForm, FeedForm, RelayForm
+from relaycfg.files.tables import Row
+from relaycfg.model.site import Equipment, Feed, Relay
+
+Steps = tuple[tuple[float, float], ...]
+
+
+def resolve_relay(form: RelayForm, device: DeviceForm, ledger: Ledger) -> Relay:
+    """The relay; feeds without a range are not judged (0 V to 0 V on ``auxiliary``)."""
+    at = f"relay.{form.name}."
+    ledger.given(at + "measures_at", form.measures_at)
+    if form.trips is None:
+        ledger.default(at + "trips", form.measures_at, "", "taken as measures_at", "own")
+    else:
+        ledger.given(at + "trips", form.trips)
+    return Relay(
+        name=form.name,
+        measures_at=form.measures_at,
+        trips=form.trips or form.measures_at,
+        poles=ledger.pick(at + "poles", form.poles, "default-relay-poles"),
+        device=resolve_device(device, at + "device.", ledger),
+        supply=_feed(form.supply, at + "supply.", ledger),
+        trip_coil_kind=ledger.pick(at + "trip_coil.kind", form.trip_coil.kind, "default-relay-trip-coil"),
+        trip_coil=_feed(form.trip_coil, at + "trip_coil.", ledger),
+        output_s=ledger.pick(at + "output_s", form.output_s, "default-relay-output", "s"),
+        coil_and_breaker_s=ledger.pick(
+            at + "coil_and_breaker_s", form.coil_and_breaker_s, "default-relay-breaker", "s"
+        ),
+    )
+
+
+def _feed(form: FeedForm, at: str, ledger: Ledger) -> Feed:
+    between = ledger.pick(at + "from", form.from_, "default-relay-feed")
+    if form.range_v is None:
+        return Feed(between, 0.0, 0.0)
+    ledger.given(at + "range_v", form.range_v, "V")
+    return Feed(between, form.range_v[0], form.range_v[1])
+
+
+def resolve_equipment(form: EquipmentForm, nominal_v: float, ledger: Ledger, warnings: list[str]) -> Equipment:
+    """The withstand steps in volts, line to neutral."""
+    at = "equipment."
+    if form.points is not None:
+        high: Steps = tuple((v, s) for v, s in form.points)
+        ledger.given(at + "points", form.points, "V, s")
+        name, source, status, sustained = "own steps", "user", "user", high[0][0]
+    else:
+        row = _curve(form, ledger)
+        high, sustained = _in_volts(row, nominal_v, ledger, warnings)
+        name, source, status = row.name, row.source, row.status
+    if form.sustained_high_v is not None:
+        ledger.given(at + "sustained_high_v", form.sustained_high_v, "V")
+    else:
+        note = "taken as the first point" if status == "user" else f"of {name}: {source}"
+        ledger.default(at + "sustained_high_v", sustained, "V", note, "own" if status == "user" else status)
+    if form.sustained_high_s is not None:
+        ledger.given(at + "sustained_high_s", form.sustained_high_s, "s")
+    else:
+        ledger.default(at + "sustained_high_s", high[0][1], "s", "taken as that of the first point", "own")
+    low: Steps = tuple((v, s) for v, s in form.points_low or ())
+    if low:
+        ledger.given(at + "points_low", form.points_low, "V, s")
+    return Equipment(
+        sustained_high_v=form.sustained_high_v if form.sustained_high_v is not None else sustained,
+        sustained_high_s=form.sustained_high_s if form.sustained_high_s is not None else high[0][1],
+        high_points=high,
+        sustained_low_v=form.sustained_low_v,
+        sustained_low_s=_low_seconds(form, low, ledger),
+        low_points=low,
+        name=name,
+        source=source,
+        status=status,
+    )
+
+
+def _curve(form: EquipmentForm, ledger: Ledger) -> Row:
+    if form.overvoltage is not None:
+        row = ledger.tables.named("withstand-curves", form.overvoltage)
+        assert row is not None
+        ledger.given("equipment.overvoltage", row.name, note=row.source)
+        return row
+    row = ledger.tables.named("withstand-curves", ledger.tables.row("default-equipment").value)
+    assert row is not None
+    ledger.default("equipment.overvoltage", row.name, "", row.source, row.status)
+    return row
+
+
+def _in_volts(row: Row, nominal_v: float, ledger: Ledger, warnings: list[str]) -> tuple[Steps, float]:
+    """Points of a curve and its sustained level in volts; curves in volts are scaled to distant nominal voltages."""
+    if "sustained_percent" in row.content:
+        scale, sustained = nominal_v / 100, float(row.content["sustained_percent"])
+    else:
+        low, high = ledger.tables.row("default-equipment-nominal-range").value
+        base = ledger.tables.row("default-equipment-nominal").value
+        scale, sustained = 1.0, float(row.content["sustained_v"])
+        if not low <= nominal_v <= high:
+            scale = nominal_v / base
+            warnings.append(
+                f"Equipment: the {row.name} is given for {base:g} V; its volts are scaled to {nominal_v:g} V, "
+                "which no source states. Give [equipment] points of your own."
+            )
+            ledger.default("equipment.scale", scale, "", f"volts of {row.name} times nominal_v / {base:g}", "own")
+    steps = tuple(sorted((round(v * scale, 6), s) for v, s in row.points))
+    return steps, round(sustained * scale, 6)
+
+
+def _low_seconds(form: EquipmentForm, low: Steps, ledger: Ledger) -> float:
+    if form.sustained_low_v is None:
+        return 0.0
+    ledger.given("equipment.sustained_low_v", form.sustained_low_v, "V")
+    if form.sustained_low_s is not None:
+        ledger.given("equipment.sustained_low_s", form.sustained_low_s, "s")
+        return form.sustained_low_s
+    if low:
+        ledger.default("equipment.sustained_low_s", low[0][1], "s", "taken as that of the first low point", "own")
+        return low[0][1]
+    row = ledger.tables.row("iti-lower")
+    percent, seconds = row.points[-1]
+    ledger.default("equipment.sustained_low_s", seconds, "s", f"{percent:g} % of {row.source}", row.status)
+    return seconds
