@@ -1,0 +1,35 @@
+"""What a voltage relay measures, how far it may err, and when it trips on a course of voltages."""
+
+from relaycfg.relay.bands import (
+    Band,
+    least_sensitive,
+    longest_delay,
+    most_sensitive,
+    pickups_least_sensitive,
+    pickups_most_sensitive,
+    refresh_s,
+    shortest_delay,
+    total_clearing,
+    window_s,
+)
+from relaycfg.relay.course import play
+from relaycfg.relay.machine import run
+from relaycfg.relay.quantities import Measured, measured_quantities, severities
+
+__all__ = [
+    "Band",
+    "Measured",
+    "least_sensitive",
+    "longest_delay",
+    "measured_quantities",
+    "most_sensitive",
+    "pickups_least_sensitive",
+    "pickups_most_sensitive",
+    "play",
+    "refresh_s",
+    "run",
+    "severities",
+    "shortest_delay",
+    "total_clearing",
+    "window_s",
+]
