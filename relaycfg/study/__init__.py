@@ -1,0 +1,6 @@
+"""The study of one site: must-hold cases, corridor, choice on the device's steps, verdicts; pure functions."""
+
+from relaycfg.study.breaks import breaks
+from relaycfg.study.study import check, derive
+
+__all__ = ["breaks", "check", "derive"]

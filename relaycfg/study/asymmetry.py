@@ -1,0 +1,84 @@
+"""The smallest load asymmetry each element sees behind a stiff source, and one break worked by hand."""
+
+import numpy as np
+
+from relaycfg.model.device import Function
+from relaycfg.model.geometry import ComplexArray
+from relaycfg.model.results import WorkedBreak
+from relaycfg.network import connected
+from relaycfg.relay import severities
+from relaycfg.study.evidence import Evidence
+from relaycfg.study.scenarios import seen_places
+from relaycfg.study.stages import ActiveStage
+
+LARGEST_RATIO = 100.0
+RATIO_STEPS = 20001
+
+
+def smallest_asymmetry(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> dict[str, float | None]:
+    """Smallest k of resistive loads k:1:1 that a set of elements sees at nominal supply, open neutral; None: never.
+
+    Closed form for a stiff source (Millman); what stays below k is not detectable at these settings.
+    """
+    sets: dict[str, tuple[Function, ...]] = {f.value: (f,) for f in dict.fromkeys(s.function for s in stages)}
+    if len(sets) > 1:
+        sets["all"] = tuple(Function)
+    ratios = np.geomspace(1.0, LARGEST_RATIO, RATIO_STEPS)
+    taps = _open_star(evidence, ratios)
+    found: dict[str, float | None] = {}
+    for name, functions in sets.items():
+        seen = np.zeros(len(ratios), bool)
+        for stage in stages:
+            if stage.function in functions:
+                channels = severities(
+                    stage.ladder.element,
+                    evidence.site.supply.geometry,
+                    taps,
+                    evidence.relay.device.displacement_from,
+                )
+                worst = channels.min(axis=-1) if stage.stage.phases == "all" else channels.max(axis=-1)
+                seen |= worst >= stage.insensitive.pickup
+        found[name] = float(ratios[np.argmax(seen)]) if seen.any() else None
+    return found
+
+
+def _open_star(evidence: Evidence, ratios: np.ndarray) -> ComplexArray:
+    """Taps [ratios, lines + 1] of a star with the first line's conductance k times the others', neutral open."""
+    geometry = evidence.site.supply.geometry
+    emf = evidence.site.supply.nominal_v * geometry.phasors
+    conductance = np.ones((len(ratios), len(emf)))
+    conductance[:, 0] = ratios
+    shift = (conductance * emf).sum(axis=1) / conductance.sum(axis=1)
+    l_n = emf - shift[:, None]
+    # The neutral moves against PE as far as against the star point, unless PE is tied to it behind the break.
+    return np.concatenate([l_n, shift[:, None]], axis=1)
+
+
+def worked_break(evidence: Evidence) -> WorkedBreak | None:
+    """The break nearest to the relay with every load connected, by Millman's theorem, beside the solver's volts."""
+    site, network = evidence.site, evidence.network
+    place = seen_places(site, evidence.relay)[-1]
+    geometry = site.supply.geometry
+    behind = site.behind(place)
+    admittance = np.zeros(len(geometry.names), complex)
+    for load in site.loads:
+        if load.board in behind and load.to_neutral:
+            each = complex(load.p_w, -load.q_var) / len(load.lines) / site.supply.nominal_v**2
+            admittance[list(load.lines)] += each
+    for motor in site.motors:
+        if motor.board in behind and motor.to_neutral:
+            admittance[list(motor.lines)] += motor.running_va.conjugate() / len(motor.lines) / site.supply.nominal_v**2
+    if abs(admittance.sum()) == 0:
+        return None
+    emf = evidence.levels.nominal
+    shift = complex((emf * admittance).sum() / admittance.sum())
+    solved = network.solve(place, connected(site), emf, all_impedance=True)
+    at = network.boards.index(behind[0] if behind else evidence.relay.measures_at)
+    return WorkedBreak(
+        place,
+        tuple(complex(y) for y in admittance),
+        float(abs(emf[0])),
+        shift,
+        tuple(float(v) for v in np.abs(emf - shift)),
+        tuple(float(v) for v in np.abs(solved.l_n[at, :, 0])),
+    )

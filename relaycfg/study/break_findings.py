@@ -1,0 +1,201 @@
+"""Findings on breaks: what stays uncleared, unseen or undisconnected, and feeds that fail with the neutral."""
+
+import numpy as np
+
+from relaycfg.model.device import Function
+from relaycfg.model.geometry import BoolArray
+from relaycfg.model.results import ClosedGroup, Finding, PlaceSummary
+from relaycfg.model.settings import Settings
+from relaycfg.study.evidence import Evidence
+from relaycfg.study.feeds import FeedRange
+from relaycfg.study.scenarios import Scenarios
+from relaycfg.study.setting_findings import turn
+from relaycfg.study.settle import Settled
+from relaycfg.study.stages import ActiveStage
+
+
+def not_cleared(
+    evidence: Evidence,
+    settled: Settled,
+    settings: Settings,
+    left: tuple[BoolArray, ...],
+    closed: tuple[ClosedGroup, ...],
+    existing: bool,
+) -> list[Finding]:
+    """Core states left uncleared (exceptions), others (warnings), and states without a solution, by place."""
+    found: list[Finding] = []
+    first_remedy: dict[str, str] = {}
+    for place in dict.fromkeys(s.place for s in evidence.scenarios):
+        mine = [(s, m) for s, m in zip(evidence.scenarios, left, strict=True) if s.place == place]
+        core = sum(int((m & s.core).sum()) for s, m in mine)
+        wanted = sum(int((s.harmful & s.core & s.resolved).sum()) for s, _ in mine)
+        zone = sum(int((m & ~s.core).sum()) for s, m in mine)
+        lost = sum(int((~s.resolved).sum()) for s, _ in mine)
+        if core:
+            worst, deadline = _worst_left(mine)
+            remedy = _what_clears(evidence, settled, settings, place, closed, existing)
+            if remedy in first_remedy:
+                remedy = f"the same changes as for the break at {first_remedy[remedy]}"
+            else:
+                first_remedy[remedy] = place
+            found.append(
+                Finding(
+                    "exception",
+                    f"break at {place}",
+                    f"break at {place}: {core} of {wanted} core scenarios are not cleared in time, up to "
+                    f"{worst:.0f} V line to neutral, due within {deadline:g} s",
+                    remedy,
+                    "equipment stays on that voltage longer than it stands",
+                )
+            )
+        if zone:
+            found.append(
+                Finding(
+                    "warning",
+                    f"break at {place}",
+                    f"break at {place}: {zone} scenarios between the sustained voltage and the first point of the "
+                    "withstand curve are not cleared in time",
+                    "see the shares by place",
+                    "equipment may age or trip by itself",
+                )
+            )
+        if lost:
+            found.append(
+                Finding(
+                    "exception",
+                    f"break at {place}",
+                    f"break at {place}: {lost} scenarios have no solution the program could find; they count as not "
+                    "cleared",
+                    "check the load kinds of the loads that are on in these states",
+                    "nothing is known of these states",
+                )
+            )
+    return found
+
+
+def _worst_left(mine: list[tuple[Scenarios, BoolArray]]) -> tuple[float, float]:
+    worst, deadline = 0.0, np.inf
+    for scenario, mask in mine:
+        core = mask & scenario.core
+        if core.any():
+            worst = max(worst, float(scenario.highest_v[core].max()))
+            deadline = min(deadline, float(scenario.deadline_s[core].min()))
+    return worst, deadline
+
+
+def _what_clears(
+    evidence: Evidence,
+    settled: Settled,
+    settings: Settings,
+    place: str,
+    closed: tuple[ClosedGroup, ...],
+    existing: bool,
+) -> str:
+    """For existing settings, the derived stages that differ; for derived ones, what blocks."""
+    if existing:
+        orders = []
+        for new in settled.settings.active:
+            old = next((s for s in settings.of(new.function) if s.number == new.number), None)
+            if old != new:
+                orders.append(turn(evidence, old, new))
+        if orders:
+            return "; ".join(orders)
+    blocked = [g for g in closed if g.place == place and g.core]
+    return f"no secure setting exists: {blocked[0].sentence}" if blocked else "see the closed corridor"
+
+
+def blind(evidence: Evidence, settings: Settings, active: tuple[ActiveStage, ...]) -> list[Finding]:
+    """Settings that no lost neutral can reach: line-to-line only, nothing on, all phases asked for."""
+    found = []
+    if active and all(a.ladder.element.line_to_line_only for a in active):
+        found.append(
+            Finding(
+                "exception",
+                "measurement",
+                "every active element measures line to line: the relay cannot see a lost neutral anywhere",
+                "use a device that measures line to neutral or neutral displacement",
+                "no neutral break is disconnected",
+            )
+        )
+    if not active:
+        found.append(
+            Finding(
+                "exception",
+                "settings",
+                "no stage is on and trips",
+                "switch on the stages that derive chooses",
+                "no neutral break is disconnected",
+            )
+        )
+    for a in active:
+        if a.stage.phases == "all" and a.function in (Function.OVERVOLTAGE, Function.UNDERVOLTAGE):
+            found.append(
+                Finding(
+                    "exception",
+                    a.stage.label,
+                    f"{a.stage.label} asks for all phases: a lost neutral raises some and lowers others",
+                    f"set {a.stage.label} to any phase",
+                    "this stage never sees a lost neutral",
+                )
+            )
+    if settings.for_relay != evidence.relay.name:
+        found.append(
+            Finding(
+                "warning",
+                "settings",
+                f"the settings are for relay {settings.for_relay}, the site has {evidence.relay.name}",
+                "check that the file belongs to this relay",
+                "the wrong relay may be judged",
+            )
+        )
+    return found
+
+
+def floating_feeds(feeds: tuple[FeedRange, ...]) -> list[Finding]:
+    """Supplies and coils that the lost neutral takes out of their working range."""
+    found = []
+    for feed in feeds:
+        low, high = feed.allowed
+        percent = 100 * feed.failing / feed.harmful if feed.harmful else 0.0
+        if feed.failing == 0:
+            continue
+        found.append(
+            Finding(
+                "exception",
+                feed.what,
+                f"{feed.what} is fed {feed.between} from the floating system: {feed.lowest_v:.0f} to "
+                f"{feed.highest_v:.0f} V over the break states, outside its {low:g} to {high:g} V in "
+                f"{percent:.1f} % of the harmful scenarios",
+                "feed it from an auxiliary source, or use an undervoltage release that opens by itself",
+                "the relay decides and nothing opens",
+            )
+        )
+    return found
+
+
+def places_findings(places: tuple[PlaceSummary, ...]) -> list[Finding]:
+    """Places the relay cannot see, and boards its switch does not disconnect."""
+    found = []
+    for place in places:
+        if not place.seen:
+            found.append(
+                Finding(
+                    "warning",
+                    f"break at {place.at}",
+                    f"break at {place.at} is not seen: {place.why_not}",
+                    "place a relay at a board behind that break, or accept it in writing",
+                    f"{place.harmful.percent:.1f} % of the load states harm equipment there",
+                )
+            )
+        elif place.not_disconnected:
+            found.append(
+                Finding(
+                    "warning",
+                    f"break at {place.at}",
+                    f"break at {place.at} also harms {', '.join(place.not_disconnected)}, which this relay does not "
+                    "disconnect",
+                    "place a relay there too, or accept it in writing",
+                    "equipment there stays on the shifted volts",
+                )
+            )
+    return found

@@ -1,0 +1,102 @@
+"""What a lost neutral does on a site: every place it can break, every board, what the relay's terminals carry."""
+
+import numpy as np
+
+from relaycfg.model.results import BreakRow, BreakStudy, PlaceSummary
+from relaycfg.model.site import NONE, Site
+from relaycfg.network import LoadStates, Network, connected, corners, join, least, sampled
+from relaycfg.study.break_rows import break_rows
+from relaycfg.study.evidence import Evidence
+from relaycfg.study.levels import supply_levels
+from relaycfg.study.place_summary import BALANCED_PU, summarise, why_not_seen
+from relaycfg.study.scenarios import Scenarios
+from relaycfg.study.stages import ActiveStage
+
+SINGLE_STATES = {"connected": connected, "least": least, "corners": corners}
+
+
+def breaks(
+    site: Site,
+    *,
+    samples: int,
+    seed: int,
+    at: str | None = None,
+    joint_ohm: float | None = None,
+    state: str | None = None,
+) -> BreakStudy:
+    """Break rows and place summaries without settings.
+
+    ``at`` keeps one place (``none``: the sound network), ``joint_ohm`` puts a joint instead of an open break,
+    ``state`` keeps one kind of load states (``sample``: no rows, only the summaries).
+    """
+    network = Network(site)
+    emf = supply_levels(site, network).nominal
+    places = (NONE, *site.places) if at is None else (at,)
+    kinds = [k for k in SINGLE_STATES if state in (None, k)]
+    rows: tuple[BreakRow, ...] = ()
+    if kinds:
+        states = join(*(SINGLE_STATES[k](site) for k in kinds))
+        rows = tuple(row for place in places for row in break_rows(site, network, place, states, emf, joint_ohm))
+    summaries: tuple[PlaceSummary, ...] = ()
+    if state in (None, "sample"):
+        drawn = sampled(site, samples, seed)
+        summaries = tuple(
+            summarise(site, network, place, network.solve(place, drawn, emf, joint_ohm), drawn, None, None, ())
+            for place in places
+            if place != NONE
+        )
+    seen = sum(not why_not_seen(site, site.relay, place) for place in site.places)
+    return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows))
+
+
+def break_study(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> BreakStudy:
+    """Place summaries under settings, with the connected state of every place as rows."""
+    site, network = evidence.site, evidence.network
+    by_place = _nominal_pairs(evidence)
+    state = connected(site)
+    rows = tuple(
+        row
+        for place in (NONE, *site.places)
+        for row in break_rows(site, network, place, state, evidence.levels.nominal, None)
+    )
+    summaries = tuple(_summary(evidence, place, by_place.get(place), stages, evidence.states) for place in site.places)
+    seen = sum(s.seen for s in summaries)
+    return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows))
+
+
+def _summary(
+    evidence: Evidence,
+    place: str,
+    pair: tuple[Scenarios, Scenarios] | None,
+    stages: tuple[ActiveStage, ...],
+    states: LoadStates,
+) -> PlaceSummary:
+    solved = evidence.network.solve(place, states, evidence.levels.nominal)
+    return summarise(evidence.site, evidence.network, place, solved, states, pair, evidence, stages)
+
+
+def _nominal_pairs(evidence: Evidence) -> dict[str, tuple[Scenarios, Scenarios]]:
+    pairs: dict[str, list[Scenarios]] = {}
+    for scenario in evidence.scenarios:
+        if scenario.level == "nominal":
+            pairs.setdefault(scenario.place, []).append(scenario)
+    return {place: (both[0], both[1]) for place, both in pairs.items()}
+
+
+def _notes(site: Site, rows: tuple[BreakRow, ...]) -> tuple[str, ...]:
+    """Breaks that move nothing: balanced load is invisible to every voltage element."""
+    limit = BALANCED_PU * site.supply.nominal_v
+    notes = []
+    for row in rows:
+        board = row.boards.get(row.at)
+        still = board is not None and board.v0_v < limit
+        if row.joint_ohm is None and still and row.boards and not _dead(row):
+            notes.append(
+                f"break at {row.at}, state {row.state}: V0 {board.v0_v if board else 0:.1f} V, the load behind it is "
+                "balanced or off; not detectable by any voltage element"
+            )
+    return tuple(notes)
+
+
+def _dead(row: BreakRow) -> bool:
+    return bool(np.max(list(row.boards[row.at].l_n_v)) == 0.0)

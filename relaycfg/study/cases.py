@@ -1,0 +1,226 @@
+"""Must-hold cases that pass: dips, swells, interruptions, motor starts, short circuits, energising, the user's own."""
+
+from dataclasses import replace
+
+import numpy as np
+
+from relaycfg.model.cases import Case, Course, Segment
+from relaycfg.model.geometry import ComplexArray
+from relaycfg.model.site import Fault, Motor, Site, UserCase
+from relaycfg.network import FaultKind, Network, connected, motor_start, short_circuit, tap
+from relaycfg.study.levels import Healthy, Levels
+from relaycfg.study.standing import FOR_EVER, standing_cases, third_harmonic_v0, with_harmonic
+
+POLE_LATE_S = 0.02
+RECOVERED_PU = 0.03
+RECOVERY_STEPS = 24
+FAULT_KINDS: tuple[FaultKind, ...] = ("L-N", "L-PE", "L-L", "three-phase")
+
+
+def must_hold_cases(site: Site, network: Network, levels: Levels, healthy: Healthy, board: str) -> tuple[Case, ...]:
+    """Every case the relay at ``board`` is played through, numbered from 1 in the order of the printed table."""
+    cases = standing_cases(site, healthy, board)
+    if site.relay is not None and site.relay.device.detector == "rms":
+        cases[-1] = _with_third_harmonic(cases[-1], third_harmonic_v0(site, board))
+    cases += [_dip(site, *row) for row in site.reference.dips]
+    cases += [_swell(site, *row) for row in site.reference.swells]
+    cases.append(_interruption(site))
+    cases += [_motor_start(site, network, levels, board, k, m) for k, m in enumerate(site.motors)]
+    cases += [_fault(site, levels, board, fault) for fault in site.faults]
+    if site.source.kind == "generator":
+        cases += _generator_steps(site)
+    cases.append(_energising(site))
+    cases.append(_lost_reading(site))
+    cases += [_user(case) for case in site.user_cases]
+    return tuple(replace(case, number=k + 1) for k, case in enumerate(cases))
+
+
+def sound_tap(site: Site, level_pu: float = 1.0) -> ComplexArray:
+    """The tap of a balanced supply at ``level_pu`` of nominal, neutral and PE together."""
+    return np.append(site.supply.nominal_v * level_pu * site.supply.geometry.phasors, 0.0)
+
+
+def _with_third_harmonic(case: Case, harmonic_v0: float) -> Case:
+    if harmonic_v0 == 0.0:
+        return case
+    first = case.courses[0]
+    moved = Course(first.label, tuple(replace(s, tap=with_harmonic(s.tap, harmonic_v0)) for s in first.segments))
+    v0 = abs(moved.segments[0].tap[:-1].mean())
+    return replace(
+        case,
+        courses=(moved, *case.courses[1:]),
+        figures=f"{case.figures}; with {harmonic_v0:.1f} V of third harmonic V0 {v0:.1f} V",
+    )
+
+
+def _dip(site: Site, residual_percent: float, duration_s: float, source: str, status: str) -> Case:
+    """A dip by its residual voltage: on all lines, one, two, and as seen through a delta-star transformer.
+
+    The last two are the types C and D of Bollen's classification (from memory): no zero sequence, no swell.
+    """
+    unit = site.supply.geometry.phasors
+    h = residual_percent / 100
+    mean = unit[1:].mean()
+    rotation = unit[1:] - mean
+    shapes: dict[str, ComplexArray] = {
+        "all lines": unit * h,
+        "one line": np.concatenate([unit[:1] * h, unit[1:]]),
+        "two lines": np.concatenate([unit[:1], unit[1:] * h]),
+    }
+    if len(unit) > 2:
+        shapes["through delta-star, type C"] = np.concatenate([unit[:1], mean + h * rotation])
+        shapes["through delta-star, type D"] = np.concatenate([unit[:1] * h, h * mean + rotation])
+    courses = tuple(_single(label, site.supply.nominal_v * shape, duration_s) for label, shape in shapes.items())
+    volts = site.supply.nominal_v * h
+    return Case(
+        0,
+        f"Dip to {residual_percent:g} %, {duration_s:g} s",
+        "hold",
+        source,
+        status,
+        False,
+        courses,
+        f"{volts:.1f} V for {duration_s:.3g} s on one, two, all lines, and types C, D",
+    )
+
+
+def _swell(site: Site, percent: float, duration_s: float, source: str, status: str) -> Case:
+    volts = site.supply.nominal_v * percent / 100
+    course = _single("all lines", volts * site.supply.geometry.phasors, duration_s)
+    return Case(
+        0,
+        f"Swell to {volts:.0f} V, {duration_s:g} s",
+        "hold",
+        source,
+        status,
+        False,
+        (course,),
+        f"{volts:.1f} V for {duration_s:.3g} s on all lines",
+    )
+
+
+def _interruption(site: Site) -> Case:
+    seconds = site.reference.interruption_s
+    course = _single("all lines", np.zeros_like(site.supply.geometry.phasors), seconds)
+    return Case(
+        0,
+        f"Short interruption, {seconds:g} s",
+        "hold",
+        site.reference.interruption_source,
+        "memory",
+        False,
+        (course,),
+        f"0 V for {seconds:.3g} s",
+    )
+
+
+def _motor_start(site: Site, network: Network, levels: Levels, board: str, index: int, motor: Motor) -> Case:
+    at = network.boards.index(board)
+    courses = []
+    for name, emf in (("lower limit", levels.lower), ("upper limit", levels.upper)):
+        solved = motor_start(network, site, index, connected(site), emf)
+        courses.append(Course(f"supply at its {name}", (Segment(motor.start_s, tap(solved, at)[0]),)))
+    lowest = float(np.abs(courses[0].segments[0].tap[:-1]).min())
+    return Case(
+        0,
+        f"Start of {motor.name}",
+        "hold",
+        f"network; motor at {motor.board}",
+        "computed",
+        False,
+        tuple(courses),
+        f"down to {lowest:.1f} V for {motor.start_s:.3g} s at the supply's lower limit",
+    )
+
+
+def _fault(site: Site, levels: Levels, board: str, fault: Fault) -> Case:
+    courses = []
+    for level, emf in (("upper limit", levels.upper), ("lower limit", levels.lower)):
+        for where, ohm in (("far", fault.circuit_ohm), ("near", 0j)):
+            for kind in FAULT_KINDS:
+                taps = short_circuit(site, fault.board, kind, ohm, emf)
+                label = f"{kind} {where} end, {level}"
+                courses.append(Course(label, (Segment(fault.clearing_s, taps[board]),)))
+    magnitudes = np.abs(np.stack([c.segments[0].tap[:-1] for c in courses]))
+    v0 = max(abs(c.segments[0].tap[:-1].mean()) for c in courses)
+    return Case(
+        0,
+        f"Short circuit behind {fault.board}, {fault.clearing_s:g} s",
+        "hold",
+        fault.source,
+        "assumed" if fault.assumed else "user",
+        False,
+        tuple(courses),
+        f"{magnitudes.min():.1f} to {magnitudes.max():.1f} V, V0 up to {v0:.1f} V, cleared in {fault.clearing_s:.3g} s",
+    )
+
+
+def _generator_steps(site: Site) -> list[Case]:
+    """Load on and load off: exponential recovery, held at the value that each of its steps begins with."""
+    source = site.source
+    cases = []
+    for name, percent in (("on", source.step_dip_percent), ("off", source.step_rise_percent)):
+        start = percent / 100
+        constant_s = source.step_recovery_s / np.log(max(abs(start) / RECOVERED_PU, np.e))
+        edges = np.linspace(0, source.step_recovery_s, RECOVERY_STEPS + 1)
+        segments = tuple(
+            Segment(float(edges[k + 1] - edges[k]), sound_tap(site, 1 + start * float(np.exp(-edges[k] / constant_s))))
+            for k in range(RECOVERY_STEPS)
+        )
+        peak = site.supply.nominal_v * (1 + start)
+        cases.append(
+            Case(
+                0,
+                f"Generator, full load {name}",
+                "hold",
+                source.step_source,
+                "quoted",
+                False,
+                (Course("all lines", segments),),
+                f"{peak:.1f} V, recovered to {100 * RECOVERED_PU:g} % in {source.step_recovery_s:.3g} s",
+            )
+        )
+    return cases
+
+
+def _energising(site: Site) -> Case:
+    late = site.supply.nominal_v * site.supply.geometry.phasors
+    late[0] = 0
+    return Case(
+        0,
+        "Energising, one pole late",
+        "hold",
+        "common practice, no source",
+        "own",
+        False,
+        (_single("one pole late", late, POLE_LATE_S),),
+        f"0 / U / U for {POLE_LATE_S:.3g} s, then all lines",
+    )
+
+
+def _lost_reading(site: Site) -> Case:
+    missing = sound_tap(site)
+    missing[0] = 0
+    v0 = abs(missing[:-1].mean())
+    return Case(
+        0,
+        "Sensing fuse open, or a line lost upstream",
+        "either",
+        "own arithmetic",
+        "own",
+        False,
+        (Course("0 / U / U", (Segment(FOR_EVER, missing),)),),
+        f"0 / U / U for ever, V0 {v0:.1f} V; not a lost neutral, line-to-line volts tell",
+    )
+
+
+def _single(label: str, l_n: ComplexArray, duration_s: float) -> Course:
+    return Course(label, (Segment(duration_s, np.append(l_n, 0.0)),))
+
+
+def _user(case: UserCase) -> Case:
+    segments = tuple(Segment(s.duration_s, np.append(np.array(s.l_n_v), np.nan)) for s in case.segments)
+    parts = (" / ".join(f"{abs(v):.1f}" for v in s.l_n_v) + f" V {s.duration_s:.3g} s" for s in case.segments)
+    return Case(
+        0, case.name, case.expect, case.source, "user", False, (Course("as given", segments),), "; ".join(parts)
+    )

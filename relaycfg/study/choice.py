@@ -1,0 +1,197 @@
+"""Choice of stages: greatest cover of what must be cleared, then fewest stages, then security margin, then speed."""
+
+from dataclasses import dataclass
+from itertools import combinations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from relaycfg.model.device import Function
+from relaycfg.model.geometry import BoolArray, FloatArray
+from relaycfg.study.ladder import Ladder
+from relaycfg.study.scenarios import Scenarios
+
+MARGIN_CAP_UNITS = 2.0
+MARGINS = tuple(float(units) for units in np.arange(MARGIN_CAP_UNITS, -0.25, -0.25))
+COVER_KEPT = 0.98
+
+
+@dataclass(frozen=True)
+class Rung:
+    """One chosen stage: its rung and delay on the ladder, and the security margin it was chosen at."""
+
+    pickup: int
+    delay: int
+    margin_units: float
+
+
+@dataclass(frozen=True)
+class Demand:
+    """States to be cleared, counted by what matters to one element.
+
+    ``deadlines`` [classes] are the distinct seconds; ``at_or_beyond`` [classes, rungs + 1] counts the states whose
+    severity reaches a rung even at its least sensitive.
+    """
+
+    deadlines: FloatArray
+    at_or_beyond: NDArray[np.int64]
+
+    @property
+    def reachable(self) -> int:
+        """States that reach the first rung."""
+        return int(self.at_or_beyond[:, 0].sum())
+
+
+def demand(ladder: Ladder, scenarios: tuple[Scenarios, ...], wanted: tuple[BoolArray, ...]) -> Demand:
+    """Count the wanted states of every scenario set; ``wanted`` [states] one a set, harmful states only."""
+    function = ladder.element.function
+    seconds = [s.deadline_s[w] for s, w in zip(scenarios, wanted, strict=True)]
+    deadlines = np.unique(np.concatenate(seconds)) if seconds else np.array([])
+    counts = np.zeros((len(deadlines), len(ladder.pickups) + 1), np.int64)
+    for scenario, want, limit in zip(scenarios, wanted, seconds, strict=True):
+        last = np.searchsorted(ladder.insensitive, scenario.severity[function][want], side="right") - 1
+        reached = last >= 0
+        np.add.at(counts, (np.searchsorted(deadlines, limit)[reached], last[reached]), 1)
+    beyond: NDArray[np.int64] = counts[:, ::-1].cumsum(axis=1)[:, ::-1]
+    return Demand(deadlines, beyond)
+
+
+def choose(ladder: Ladder, own: Demand, need: Demand, stages: int) -> tuple[Rung, ...]:
+    """At most ``stages`` stages in order of rising severity; empty where nothing is covered.
+
+    ``own`` counts all states to be cleared (redundancy), ``need`` those of the core that no other element clears
+    with the full margin. In order: all of ``need`` that any secure stages can cover, at least 98 percent of the
+    greatest cover of ``own``, fewest stages, security margin (to the cap), speed, low pickup.
+    """
+    goal = _score(ladder, own, need, best_cover(ladder, own, need, stages))
+    if goal[1] == 0:
+        return ()
+    fewest = next(
+        count
+        for count in range(1, stages + 1)
+        if _reaches(_score(ladder, own, need, best_cover(ladder, own, need, count)), goal)
+    )
+    for units in MARGINS:
+        rungs = best_cover(ladder, own, need, fewest, units)
+        if _reaches(_score(ladder, own, need, rungs), goal):
+            break
+    return raise_margins(ladder, own, need, rungs, goal)
+
+
+def best_cover(ladder: Ladder, own: Demand, need: Demand, stages: int, units: float = 0.0) -> tuple[Rung, ...]:
+    """The stages that cover most of ``need``, then of ``own``, with every stage secure at ``units`` of margin.
+
+    The fastest secure delay never rises over the rungs, so a state of deadline D is covered by a rung iff its
+    severity reaches it and the rung is at or beyond the first that is fast enough for D. Lowering a stage to that
+    first rung of its tightest deadline loses nothing: the distinct first rungs are the only candidates, and the
+    search over their subsets is exact.
+    """
+    fastest = ladder.fastest(units)
+    clearing = ladder.clearing[fastest]
+    first = [_first(clearing <= limit) for limit in own.deadlines]
+    candidates = [Rung(k, int(fastest[k]), units) for k in sorted({k for k in first if k < len(clearing)})]
+    best: tuple[Rung, ...] = ()
+    score = (0, 0)
+    for count in range(1, min(stages, len(candidates)) + 1):
+        for subset in combinations(candidates, count):
+            covered = _score(ladder, own, need, subset)
+            if covered > score:
+                best, score = subset, covered
+    return best
+
+
+def raise_margins(
+    ladder: Ladder, own: Demand, need: Demand, rungs: tuple[Rung, ...], goal: tuple[int, int] | None = None
+) -> tuple[Rung, ...]:
+    """Each stage in turn at the greatest security margin (to the cap) that still reaches the goal.
+
+    The goal is all of the needed core and 98 percent of the cover that the stages have now, or as given. Among the
+    rungs that do, the fastest, then the lowest pickup.
+    """
+    target = goal if goal is not None else _score(ladder, own, need, rungs)
+    moved = list(rungs)
+    for position in range(len(moved)):
+        moved[position] = _with_margin(ladder, own, need, moved, position, target)
+    return tuple(sorted(moved, key=lambda r: r.pickup))
+
+
+def detection_rung(ladder: Ladder) -> Rung | None:
+    """The lowest pickup that is secure with the full margin, at its shortest secure delay; None where none is."""
+    for units in MARGINS:
+        fastest = ladder.fastest(units)
+        rung = _first(fastest < len(ladder.delays))
+        if rung < len(fastest):
+            return Rung(rung, int(fastest[rung]), units)
+    return None
+
+
+def covered_by(ladder: Ladder, rungs: tuple[Rung, ...], scenario: Scenarios) -> BoolArray:
+    """States [states] that the stages clear before their deadline."""
+    severity = scenario.severity[ladder.element.function]
+    cleared = np.zeros(severity.shape, bool)
+    for rung in rungs:
+        within = ladder.clearing[rung.delay] <= scenario.deadline_s
+        cleared |= (severity >= ladder.insensitive[rung.pickup]) & within
+    return cleared
+
+
+def _score(ladder: Ladder, own: Demand, need: Demand, rungs: tuple[Rung, ...]) -> tuple[int, int]:
+    """States of ``need`` and of ``own`` that the stages cover."""
+    pairs = [(r.pickup, float(ladder.clearing[r.delay])) for r in rungs]
+    return _cover(need, pairs), _cover(own, pairs)
+
+
+def _cover(wanted: Demand, stages: list[tuple[int, float]]) -> int:
+    """States covered by stages given as (rung, clearing time)."""
+    total = 0
+    for k, limit in enumerate(wanted.deadlines):
+        usable = [rung for rung, clearing in stages if clearing <= limit]
+        if usable:
+            total += int(wanted.at_or_beyond[k, min(usable)])
+    return total
+
+
+def _reaches(score: tuple[int, int], goal: tuple[int, int]) -> bool:
+    return score[0] >= goal[0] and score[1] >= COVER_KEPT * goal[1]
+
+
+def _with_margin(
+    ladder: Ladder, own: Demand, need: Demand, rungs: list[Rung], position: int, goal: tuple[int, int]
+) -> Rung:
+    others = [(r.pickup, float(ladder.clearing[r.delay])) for k, r in enumerate(rungs) if k != position]
+    for units in MARGINS:
+        if units < rungs[position].margin_units:
+            break
+        fastest = ladder.fastest(units)
+        clearing = ladder.clearing[fastest]
+        kept = (_cover_of_each(need, others, clearing) >= goal[0]) & (fastest < len(ladder.delays))
+        kept &= _cover_of_each(own, others, clearing) >= COVER_KEPT * goal[1]
+        if kept.any():
+            quickest = int(fastest[kept].min())
+            return Rung(_first(kept & (fastest == quickest)), quickest, units)
+    return rungs[position]
+
+
+def _cover_of_each(wanted: Demand, others: list[tuple[int, float]], clearing: FloatArray) -> NDArray[np.int64]:
+    """States covered [rungs] when each rung in turn joins the other stages."""
+    rungs = np.arange(len(clearing))
+    total = np.zeros(len(rungs), np.int64)
+    for k, limit in enumerate(wanted.deadlines):
+        fixed = min((rung for rung, seconds in others if seconds <= limit), default=len(rungs))
+        lowest = np.minimum(np.where(clearing <= limit, rungs, len(rungs)), fixed)
+        total += wanted.at_or_beyond[k, lowest]
+    return total
+
+
+def _first(flags: BoolArray) -> int:
+    """Index of the first true entry, len(flags) where there is none."""
+    return int(np.argmax(flags)) if flags.any() else len(flags)
+
+
+def harmful_states(scenarios: tuple[Scenarios, ...]) -> tuple[BoolArray, ...]:
+    """The states that have to be cleared: harm behind the switch, and resolved."""
+    return tuple(s.harmful & s.resolved for s in scenarios)
+
+
+ORDER = (Function.OVERVOLTAGE, Function.UNDERVOLTAGE, Function.DISPLACEMENT, Function.UNBALANCE)
+"""Order of choice: 59 and 27 on their own, 59N for detection and what they leave, 47 only for what is left."""

@@ -1,0 +1,45 @@
+"""Findings: every exception, warning and note in order, with what to do and what happens if it is left."""
+
+from relaycfg.model.geometry import BoolArray
+from relaycfg.model.results import CaseResult, ClosedGroup, Finding, PlaceSummary
+from relaycfg.model.settings import Settings
+from relaycfg.study.break_findings import blind, floating_feeds, not_cleared, places_findings
+from relaycfg.study.evidence import Evidence
+from relaycfg.study.feeds import FeedRange
+from relaycfg.study.margins import Security
+from relaycfg.study.setting_findings import device_limits, failed_cases, insecure, rules
+from relaycfg.study.settle import Settled
+from relaycfg.study.stages import ActiveStage
+
+
+def findings(
+    evidence: Evidence,
+    settings: Settings,
+    settled: Settled,
+    active: tuple[ActiveStage, ...],
+    securities: dict[str, Security],
+    cases: tuple[CaseResult, ...],
+    left: tuple[BoolArray, ...],
+    closed: tuple[ClosedGroup, ...],
+    places: tuple[PlaceSummary, ...],
+    feeds: tuple[FeedRange, ...],
+    existing: bool,
+) -> tuple[Finding, ...]:
+    """All findings, exceptions first; ``existing`` settings also get what to turn to what."""
+    found = [
+        *insecure(evidence, settled, active, securities, cases, existing),
+        *failed_cases(cases, active, securities),
+        *not_cleared(evidence, settled, settings, left, closed, existing),
+        *blind(evidence, settings, active),
+        *floating_feeds(feeds),
+        *(device_limits(evidence, settings) if existing else ()),
+        *rules(evidence, settings, existing),
+        *places_findings(places),
+        *_warnings(evidence),
+    ]
+    order = {"exception": 0, "warning": 1, "note": 2}
+    return tuple(sorted(found, key=lambda f: order[f.severity]))
+
+
+def _warnings(evidence: Evidence) -> list[Finding]:
+    return [Finding("warning", "site", w, "check the site file", "") for w in evidence.site.warnings]

@@ -1,0 +1,177 @@
+"""One break place over all sampled load states: harm, operation, what is seen, what stays undetected."""
+
+import numpy as np
+
+from relaycfg.model.geometry import BoolArray, FloatArray
+from relaycfg.model.results import ElementSight, Harm, Operation, Percentiles, PlaceSummary, WorstState
+from relaycfg.model.site import SOURCE, Relay, Site
+from relaycfg.network import LoadStates, Network, Solved
+from relaycfg.study.deadlines import high_deadline_s
+from relaycfg.study.evidence import Evidence
+from relaycfg.study.scenarios import Scenarios
+from relaycfg.study.shares import share
+from relaycfg.study.stages import ActiveStage, operating_s
+
+HARMS: tuple[Harm, ...] = ("none", "high volts", "low volts", "both")
+OPERATIONS: tuple[Operation, ...] = ("in time", "late", "none")
+WORST_SHOWN = 3
+BALANCED_PU = 0.01
+
+
+def why_not_seen(site: Site, relay: Relay | None, place: str) -> str:
+    """Why the relay cannot see a break at ``place``; empty where it can."""
+    if relay is None:
+        return "no relay is described for this site"
+    if place != SOURCE and place not in site.path(relay.measures_at):
+        return f"the break is not upstream of the relay's tap at {relay.measures_at}"
+    if all(e.line_to_line_only for e in relay.device.elements):
+        return "the device measures line to line only; a lost neutral does not move line-to-line volts"
+    if relay.device.displacement_from == "n-to-earth" and _split_is_downstream(site, relay, place):
+        return _blind_to_pen(relay)
+    return ""
+
+
+def _split_is_downstream(site: Site, relay: Relay, place: str) -> bool:
+    """Whether N and PE are still one conductor at the break, so that both move together behind it."""
+    return site.supply.earthing == "TN-C-S" and site.conductor(place) == "PEN" and place in site.path(relay.measures_at)
+
+
+def _blind_to_pen(relay: Relay) -> str:
+    """A device whose only neutral quantity is N against PE is blind upstream of the split."""
+    others = [e for e in relay.device.elements if e.quantity in ("l-n", "line-to-neutral deviation", "spread")]
+    return "" if others else "N and PE move together: the break is upstream of the split, N against PE stays near 0"
+
+
+def summarise(
+    site: Site,
+    network: Network,
+    place: str,
+    solved: Solved,
+    states: LoadStates,
+    pair: tuple[Scenarios, Scenarios] | None,
+    evidence: Evidence | None,
+    stages: tuple[ActiveStage, ...],
+) -> PlaceSummary:
+    """One place at nominal supply; ``pair`` holds its scenarios as modelled and all constant impedance.
+
+    The class of a state is the worst over both load models: harmed if either is, operated only if both are.
+    """
+    relay = site.relay
+    # An unresolved state has no voltages to show; it is counted, and left out of every figure.
+    magnitudes = np.where(solved.converged, np.abs(solved.l_n), 0.0)
+    samples = magnitudes.shape[-1]
+    highest = magnitudes.max(axis=(0, 1))
+    why = why_not_seen(site, relay, place)
+    equipment = site.equipment
+    harmed = np.isfinite(high_deadline_s(equipment, magnitudes.max(axis=1))) & solved.converged
+    behind = set(site.behind(relay.trips)) if relay is not None else set()
+    touched = tuple(b for k, b in enumerate(network.boards) if harmed[k].any())
+    anywhere: BoolArray = np.logical_or.reduce(harmed, axis=0)
+    classes, harmful, undetected, unresolved = _classes(pair, evidence, stages, anywhere, solved, bool(why))
+    return PlaceSummary(
+        place,
+        site.conductor(place),
+        not why,
+        why,
+        samples,
+        unresolved,
+        {
+            "below band": int(solved.below_band.sum()),
+            "above band": int(solved.above_band.sum()),
+            "unstable": int(solved.unstable.sum()),
+        },
+        {name: share(count, samples) for name, count in classes.items()},
+        share(harmful, samples),
+        share(undetected, samples),
+        _percentiles(site, network, highest, solved),
+        _worst(site, network, magnitudes, states),
+        () if pair is None or evidence is None else _sights(pair, evidence, stages),
+        touched,
+        tuple(b for b in network.boards if b not in touched),
+        tuple(b for b in touched if b not in behind),
+        _largest(np.abs(solved.pe_earth[:, solved.converged])),
+    )
+
+
+def _classes(
+    pair: tuple[Scenarios, Scenarios] | None,
+    evidence: Evidence | None,
+    stages: tuple[ActiveStage, ...],
+    harmed: BoolArray,
+    solved: Solved,
+    blind: bool,
+) -> tuple[dict[str, int], int, int, int]:
+    """Counts a class; without a relay, or for a break it cannot see, nothing operates."""
+    if pair is None or evidence is None:
+        lost = int((~solved.converged).sum())
+        count = int(harmed.sum())
+        none = len(harmed) - count - lost
+        return ({"high volts / none": count, "none / none": none} if blind else {}), count, none if blind else 0, lost
+    resolved = pair[0].resolved & pair[1].resolved
+    high, low = pair[0].high | pair[1].high, pair[0].low | pair[1].low
+    harm = np.where(high & low, 3, np.where(low, 2, np.where(high, 1, 0)))
+    operation = np.zeros(len(harm), int)
+    for scenario in pair:
+        operated = operating_s(stages, scenario, evidence)
+        this = np.where(~np.isfinite(operated), 2, np.where(operated > scenario.deadline_s, 1, 0))
+        operation = np.maximum(operation, this)
+    counts = {
+        f"{HARMS[h]} / {OPERATIONS[o]}": int((resolved & (harm == h) & (operation == o)).sum())
+        for h in range(len(HARMS))
+        for o in range(len(OPERATIONS))
+    }
+    harmful = int((resolved & (harm > 0)).sum())
+    return {k: v for k, v in counts.items() if v}, harmful, counts["none / none"], int((~resolved).sum())
+
+
+def _percentiles(site: Site, network: Network, highest: FloatArray, solved: Solved) -> tuple[Percentiles, ...]:
+    rows = [("highest line-to-neutral, any board", highest)]
+    if site.relay is not None:
+        tap_l_n = solved.l_n[network.boards.index(site.relay.measures_at)]
+        rows.append(("V0 at the relay", np.abs(tap_l_n.mean(axis=0))))
+        rows.append(("lowest line-to-neutral at the relay", np.abs(tap_l_n).min(axis=0)))
+    there = solved.converged
+    found = []
+    for name, values in rows:
+        if not there.any():
+            continue
+        p5, p50, p95, largest = (float(v) for v in np.percentile(values[there], [5, 50, 95, 100]))
+        found.append(Percentiles(name, "V", p5, p50, p95, largest))
+    return tuple(found)
+
+
+def _worst(site: Site, network: Network, magnitudes: FloatArray, states: LoadStates) -> tuple[WorstState, ...]:
+    flat = magnitudes.reshape(-1, magnitudes.shape[-1])
+    order = np.argsort(flat.max(axis=0))[::-1][:WORST_SHOWN]
+    lines = len(site.supply.geometry.names)
+    found = []
+    for k in order:
+        where = int(np.argmax(flat[:, k]))
+        found.append(
+            WorstState(
+                int(k),
+                network.boards[where // lines],
+                site.supply.geometry.names[where % lines],
+                float(flat[where, k]),
+                int((states.loads[:, k] != 0).sum()),
+            )
+        )
+    return tuple(found)
+
+
+def _sights(
+    pair: tuple[Scenarios, Scenarios], evidence: Evidence, stages: tuple[ActiveStage, ...]
+) -> tuple[ElementSight, ...]:
+    """Share of states each element picks up in under both load models, and its fastest clearing time there."""
+    found = []
+    for function in dict.fromkeys(s.function for s in stages):
+        mine = tuple(s for s in stages if s.function is function)
+        seconds = np.maximum(*(operating_s(mine, scenario, evidence) for scenario in pair))
+        seen = np.isfinite(seconds)
+        fastest = float(seconds.min()) if seen.any() else None
+        found.append(ElementSight(function, share(int(seen.sum()), len(seen)), fastest))
+    return tuple(found)
+
+
+def _largest(values: FloatArray) -> float | None:
+    return None if not values.size or np.isnan(values).all() else float(np.nanmax(values))

@@ -1,0 +1,132 @@
+"""Ride-through R: how long the must-hold cases keep an element picked up, for every pickup at once."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from relaycfg.model.cases import Case, Course
+from relaycfg.model.device import Device, Element
+from relaycfg.model.geometry import FloatArray, Geometry
+from relaycfg.relay import severities, window_s
+
+STANDING = -1
+NOTHING = -2
+GRAIN_S = 1e-9
+
+
+@dataclass(frozen=True)
+class Runs:
+    """The courses of all hold cases as severities of one element, embedded in the worst standing severity.
+
+    ``severity`` [courses, segments, channels] and ``duration_s`` [courses, segments], padded with zero seconds;
+    ``names`` one a course, ``cases`` its case number.
+    """
+
+    severity: FloatArray
+    duration_s: FloatArray
+    names: tuple[str, ...]
+    cases: tuple[int, ...]
+    standing: float
+    standing_name: str
+    window_s: float
+    shared: bool
+
+
+@dataclass(frozen=True)
+class RideThrough:
+    """R [s] for each pickup asked for (inf: never resets), and the course behind it (an index, or STANDING)."""
+
+    seconds: FloatArray
+    behind: NDArray[np.intp]
+
+
+def stack(
+    courses: list[Course], element: Element, geometry: Geometry, displacement_from: str
+) -> tuple[FloatArray, FloatArray]:
+    """Severities [courses, segments, channels] and durations [courses, segments] of courses of unequal length."""
+    longest = max(len(c.segments) for c in courses)
+    width = len(geometry.names) + 1
+    taps = np.zeros((len(courses), longest, width), complex)
+    seconds = np.zeros((len(courses), longest))
+    for k, course in enumerate(courses):
+        for j, segment in enumerate(course.segments):
+            taps[k, j] = segment.tap
+            seconds[k, j] = segment.duration_s
+    return severities(element, geometry, taps, displacement_from), seconds
+
+
+def runs_of(cases: tuple[Case, ...], element: Element, device: Device, geometry: Geometry, frequency_hz: float) -> Runs:
+    """The hold cases as seen by one element; standing cases become the value all others are embedded in."""
+    held = [(case, course) for case in cases if case.expect == "hold" for course in case.courses]
+    lasting = [(case, course) for case, course in held if case.standing]
+    passing = [(case, course) for case, course in held if not case.standing]
+    still, _ = stack([c for _, c in lasting], element, geometry, device.displacement_from)
+    worst = int(np.argmax(still.max(axis=(1, 2))))
+    severity, seconds = stack([c for _, c in passing], element, geometry, device.displacement_from)
+    return Runs(
+        severity,
+        seconds,
+        tuple(course_name(case, course) for case, course in passing),
+        tuple(case.number for case, _ in passing),
+        float(still[worst].max()),
+        course_name(*lasting[worst]),
+        window_s(device, frequency_hz),
+        device.timers == "shared",
+    )
+
+
+def course_name(case: Case, course: Course) -> str:
+    """How a course is named wherever it stands behind a figure."""
+    variant = f" ({course.label})" if len(case.courses) > 1 else ""
+    return f"case {case.number}, {case.name}{variant}"
+
+
+def run_lengths(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: float = 0.0) -> FloatArray:
+    """How long each course keeps the timer running [courses, pickups], one measuring window included.
+
+    ``pickup`` and ``dropout`` [pickups] are severities already on their sensitive side. A falling excursion stays
+    in the window, so each run is that much longer and swallows shorter gaps; infinite where the standing severity
+    keeps it from dropping out. Same definition as the step-by-step machine (``relay.run``), which the tests hold it to.
+    """
+    picked = np.zeros((len(runs.names), len(pickup), runs.severity.shape[-1]), bool)
+    shape = picked.shape[:2] if runs.shared else picked.shape
+    count, gap, tail, longest = np.zeros(shape), np.zeros(shape), np.zeros(shape), np.zeros(shape)
+    for k in range(runs.severity.shape[1]):
+        here = runs.severity[:, k, None, :]
+        real = (runs.duration_s[:, k] > 0)[:, None, None]
+        now = np.where(picked, here >= dropout[None, :, None], here >= pickup[None, :, None])
+        picked = np.where(real, now, picked)
+        seconds = runs.duration_s[:, k].reshape((-1,) + (1,) * (len(shape) - 1))
+        timing = picked.any(axis=-1) if runs.shared else picked
+        counted = np.where(timing, seconds, np.minimum(tail, seconds))
+        reached = count + counted
+        longest = np.maximum(longest, reached)
+        gap = np.where(timing, 0.0, gap + seconds - counted)
+        count = np.where(gap > hold_s + GRAIN_S, 0.0, reached)
+        tail = np.where(timing & (seconds > 0), runs.window_s, tail - counted)
+    ends_up = picked & (runs.standing >= dropout)[None, :, None]
+    endless = ends_up.any(axis=-1)
+    longest = np.maximum(longest, np.where(count > 0, count + tail, 0.0))
+    each = longest if runs.shared else longest.max(axis=-1)
+    return np.where(endless, np.inf, each)
+
+
+def ride_through(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: float = 0.0) -> RideThrough:
+    """R of the severities ``pickup`` with drop-out ``dropout``: the longest run of any course.
+
+    Infinite where the standing severity itself picks up.
+    """
+    each = run_lengths(runs, pickup, dropout, hold_s)
+    behind = np.argmax(each, axis=0)
+    seconds = each[behind, np.arange(len(pickup))]
+    behind = np.where(seconds > 0, behind, NOTHING)
+    stands = runs.standing >= pickup
+    return RideThrough(np.where(stands, np.inf, seconds), np.where(stands, STANDING, behind))
+
+
+def behind_name(runs: Runs, index: int) -> str:
+    """The case behind one value of R in words."""
+    if index == STANDING:
+        return runs.standing_name
+    return "no case picks it up" if index == NOTHING else runs.names[index]

@@ -1,0 +1,168 @@
+"""Findings on settings: what trips on a sound supply, what the device cannot be set to, and what to turn to what."""
+
+from relaycfg.model.device import Function, SettableRange
+from relaycfg.model.results import CaseResult, Finding
+from relaycfg.model.settings import Settings, Stage
+from relaycfg.study.evidence import Evidence
+from relaycfg.study.margins import Security
+from relaycfg.study.settle import Settled
+from relaycfg.study.stages import ActiveStage
+
+
+def turn(evidence: Evidence, old: Stage | None, new: Stage) -> str:
+    """The order to act on, such as "turn U> from 253 to 265 V"."""
+    element = evidence.ladders[new.function].element
+    knob = element.knob or f"the {new.label} pickup"
+    unit = "%" if new.function is Function.UNBALANCE or element.unit == "percent" else "V"
+    to = f"{element.marked(new.pickup):g}"
+    if old is None or not old.on:
+        return f"switch {new.label} on: {knob} {to} {unit}, delay {new.delay_s:g} s, drop-out {new.dropout_ratio:g}"
+    parts = []
+    if old.pickup != new.pickup:
+        parts.append(f"{knob} from {element.marked(old.pickup):g} to {to} {unit}")
+    if old.delay_s != new.delay_s:
+        parts.append(f"its delay from {old.delay_s:g} to {new.delay_s:g} s")
+    if old.dropout_ratio != new.dropout_ratio:
+        parts.append(f"its drop-out from {old.dropout_ratio:g} to {new.dropout_ratio:g}")
+    return f"{old.label}: turn {', '.join(parts)}" if parts else f"{old.label}: leave as it is"
+
+
+def insecure(
+    evidence: Evidence,
+    settled: Settled,
+    active: tuple[ActiveStage, ...],
+    securities: dict[str, Security],
+    cases: tuple[CaseResult, ...],
+    existing: bool,
+) -> list[Finding]:
+    """Stages that trip on a sound supply, by how much, and what to turn to what."""
+    found = []
+    for a in active:
+        secure = securities[a.stage.label]
+        if secure.secure:
+            continue
+        unit = "%" if a.function is Function.UNBALANCE else "V"
+        failed = [c for c in cases if c.expect == "hold" and any(o.startswith(a.stage.label) for o in c.operated)]
+        more = f" and {len(failed) - 1} more case{'s' if len(failed) > 2 else ''}" if len(failed) > 1 else ""
+        volts = f"{abs(secure.volts or 0):.1f} {unit} {'lower' if a.function is Function.UNDERVOLTAGE else 'higher'}"
+        longer = "no delay is long enough" if secure.seconds is None else f"{abs(secure.seconds):.2f} s longer"
+        new = _nearest(settled.settings.of(a.function), a.stage)
+        found.append(
+            Finding(
+                "exception",
+                a.stage.label,
+                f"{a.stage.label}, {a.stage.pickup:.1f} {unit} {a.stage.delay_s:g} s, trips in "
+                f"{secure.seconds_case}{more}; to hold, at this delay {volts}, or at this pickup {longer}",
+                turn(evidence, a.stage, new) if existing and new else f"switch {a.stage.label} off",
+                "it disconnects a sound supply",
+            )
+        )
+    return found
+
+
+def _nearest(stages: tuple[Stage, ...], old: Stage) -> Stage | None:
+    on = [s for s in stages if s.on]
+    return min(on, key=lambda s: (abs(s.pickup - old.pickup), s.number), default=None)
+
+
+def failed_cases(
+    cases: tuple[CaseResult, ...], active: tuple[ActiveStage, ...], securities: dict[str, Security]
+) -> list[Finding]:
+    """Cases that fail though every stage that operated counts as secure, and cases that should have tripped."""
+    insecure = {a.stage.label for a in active if not securities[a.stage.label].secure}
+    found = []
+    for case in cases:
+        if case.passed:
+            continue
+        culprits = [o for o in case.operated if o.split(" after ")[0] not in insecure]
+        if case.outcome == "hold":
+            found.append(
+                Finding(
+                    "exception",
+                    f"case {case.number}",
+                    f"case {case.number}, {case.name}: expected to trip, and no stage does",
+                    "compare the case with the pickups and delays",
+                    "the relay stays closed in this case",
+                )
+            )
+        elif culprits:
+            found.append(
+                Finding(
+                    "exception",
+                    f"case {case.number}",
+                    f"case {case.number}, {case.name}: {', '.join(culprits)}",
+                    "raise the pickup or the delay of that stage",
+                    "it disconnects a sound supply",
+                )
+            )
+    return found
+
+
+def device_limits(evidence: Evidence, settings: Settings) -> list[Finding]:
+    """Settings the device does not have."""
+    found = []
+    for stage in settings.stages:
+        ladder = evidence.ladders.get(stage.function)
+        if not stage.on:
+            continue
+        if ladder is None:
+            found.append(_limit(stage, "the device has no such element", "remove it"))
+            continue
+        element = ladder.element
+        if stage.number > element.stages:
+            found.append(_limit(stage, f"the element has {element.stages} stage(s)", "remove it"))
+        if not element.pickup.holds(stage.pickup):
+            found.append(_limit(stage, f"pickup {stage.pickup:g} is not on {_range(element.pickup)}", "settle it"))
+        if not element.delay_s.holds(stage.delay_s):
+            found.append(_limit(stage, f"delay {stage.delay_s:g} s is not on {_range(element.delay_s)}", "settle it"))
+        if stage.dropout_ratio not in element.dropout_ratio:
+            offered = ", ".join(f"{r:g}" for r in element.dropout_ratio)
+            found.append(_limit(stage, f"drop-out {stage.dropout_ratio:g} is not one of {offered}", "settle it"))
+    return found
+
+
+def _range(settable: SettableRange) -> str:
+    return f"{settable.low:g} to {settable.high:g} by {settable.step:g}"
+
+
+def _limit(stage: Stage, sentence: str, do: str) -> Finding:
+    return Finding(
+        "exception", stage.label, f"{stage.label}: {sentence}", f"{do} on a value the device has", "it cannot be set"
+    )
+
+
+def rules(evidence: Evidence, settings: Settings, existing: bool) -> list[Finding]:
+    """Rules around the settings: reconnection, inputs that changed, poles."""
+    found = []
+    if settings.after_any_trip != "by hand":
+        found.append(
+            Finding(
+                "exception",
+                "reconnect",
+                "the relay reconnects by itself: with the load off the volts look healthy, and it closes onto the "
+                "same break",
+                "set reconnection after any trip to by hand",
+                "it pumps the board on and off",
+            )
+        )
+    if existing and settings.input_digest not in ("", "sha256:0", evidence.site.digest):
+        found.append(
+            Finding(
+                "warning",
+                "inputs",
+                "the settings were derived from other inputs than this site's files hold now",
+                "derive again or find out what changed",
+                "margins on an older sheet may no longer hold",
+            )
+        )
+    if evidence.relay.poles == "lines":
+        found.append(
+            Finding(
+                "note",
+                "poles",
+                "the switch opens the lines only: the neutral and PE stay connected to what may be live",
+                "treat the board's metalwork as live until proved dead",
+                "",
+            )
+        )
+    return found

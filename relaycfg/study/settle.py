@@ -1,0 +1,183 @@
+"""From chosen rungs to settings: every element of the device in turn, unused stages written as off."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from relaycfg.model.device import Function
+from relaycfg.model.geometry import BoolArray
+from relaycfg.model.settings import Settings, Stage
+from relaycfg.study.choice import (
+    COVER_KEPT,
+    MARGIN_CAP_UNITS,
+    ORDER,
+    Rung,
+    best_cover,
+    choose,
+    covered_by,
+    demand,
+    detection_rung,
+    harmful_states,
+    raise_margins,
+)
+from relaycfg.study.evidence import Evidence
+from relaycfg.study.ladder import Ladder
+
+INHIBIT_S = 0.5
+
+
+@dataclass(frozen=True)
+class Settled:
+    """The chosen settings, and why each unused stage is off."""
+
+    settings: Settings
+    off_reason: dict[Function, str]
+
+
+def settle(evidence: Evidence) -> Settled:
+    """Choose every element's stages on the device's own steps.
+
+    59, 27 and 59N are each chosen for all states they can reach (redundancy), and must keep the core states that
+    the others do not clear with the full margin; then each stage's margin is raised as far as the core states that
+    now depend on it alone allow. A 59N stage left over becomes the detection stage. 47 is chosen last, with the full
+    margin, and only where it adds core states or more than 2 percent of all.
+    """
+    wanted = harmful_states(evidence.scenarios)
+    chosen = _choose_each(evidence, wanted)
+    chosen = _raise_each(evidence, wanted, chosen)
+    displacement = evidence.ladders.get(Function.DISPLACEMENT)
+    if displacement is not None:
+        chosen[Function.DISPLACEMENT] = _with_detection(displacement, chosen[Function.DISPLACEMENT])
+    unbalance = evidence.ladders.get(Function.UNBALANCE)
+    if unbalance is not None:
+        left = _without(evidence, wanted, chosen, tuple(chosen))
+        chosen[Function.UNBALANCE] = _addition(evidence, unbalance, wanted, left)
+    reasons = {f: _why_off(evidence, f, chosen, wanted) for f in ORDER}
+    settings = Settings(
+        evidence.relay.name,
+        evidence.relay.device.name,
+        evidence.site.digest,
+        tuple(s for f in ORDER if f in chosen for s in _stages(evidence.ladders[f], chosen[f])),
+        INHIBIT_S,
+        "by hand",
+    )
+    return Settled(settings, reasons)
+
+
+def _choose_each(evidence: Evidence, wanted: tuple[BoolArray, ...]) -> dict[Function, tuple[Rung, ...]]:
+    ladders = {f: evidence.ladders[f] for f in ORDER[:-1] if f in evidence.ladders}
+    own = {f: demand(ladder, evidence.scenarios, wanted) for f, ladder in ladders.items()}
+    robust = {
+        f: best_cover(ladder, own[f], own[f], ladder.element.stages, MARGIN_CAP_UNITS) for f, ladder in ladders.items()
+    }
+    chosen = {}
+    for function, ladder in ladders.items():
+        others = tuple(f for f in ladders if f is not function)
+        need = demand(ladder, evidence.scenarios, _core(evidence, _without(evidence, wanted, robust, others)))
+        chosen[function] = choose(ladder, own[function], need, ladder.element.stages)
+    return chosen
+
+
+def _raise_each(
+    evidence: Evidence, wanted: tuple[BoolArray, ...], chosen: dict[Function, tuple[Rung, ...]]
+) -> dict[Function, tuple[Rung, ...]]:
+    raised = dict(chosen)
+    for function in chosen:
+        ladder = evidence.ladders[function]
+        others = tuple(f for f in chosen if f is not function)
+        own = demand(ladder, evidence.scenarios, wanted)
+        need = demand(ladder, evidence.scenarios, _core(evidence, _without(evidence, wanted, raised, others)))
+        raised[function] = raise_margins(ladder, own, need, raised[function])
+    return raised
+
+
+def _addition(
+    evidence: Evidence, ladder: Ladder, wanted: tuple[BoolArray, ...], left: tuple[BoolArray, ...]
+) -> tuple[Rung, ...]:
+    """Stages with the full margin for what is left, if that is worth a setting."""
+    need = demand(ladder, evidence.scenarios, _core(evidence, left))
+    own = demand(ladder, evidence.scenarios, left)
+    rungs = best_cover(ladder, own, need, ladder.element.stages, MARGIN_CAP_UNITS)
+    mine = {ladder.element.function: rungs}
+    still = _without(evidence, left, mine, tuple(mine))
+    added = sum(int(a.sum() - b.sum()) for a, b in zip(left, still, strict=True))
+    core = sum(int((a & ~b & s.core).sum()) for a, b, s in zip(left, still, evidence.scenarios, strict=True))
+    total = sum(int(w.sum()) for w in wanted)
+    return rungs if core or added > (1 - COVER_KEPT) * total else ()
+
+
+def _without(
+    evidence: Evidence,
+    states: tuple[BoolArray, ...],
+    chosen: dict[Function, tuple[Rung, ...]],
+    functions: tuple[Function, ...],
+) -> tuple[BoolArray, ...]:
+    """What is left of ``states`` after these elements' stages."""
+    left = []
+    for scenario, mask in zip(evidence.scenarios, states, strict=True):
+        cleared = np.zeros(mask.shape, bool)
+        for function in functions:
+            cleared |= covered_by(evidence.ladders[function], chosen[function], scenario)
+        left.append(mask & ~cleared)
+    return tuple(left)
+
+
+def _core(evidence: Evidence, states: tuple[BoolArray, ...]) -> tuple[BoolArray, ...]:
+    return tuple(mask & s.core for mask, s in zip(states, evidence.scenarios, strict=True))
+
+
+def _with_detection(ladder: Ladder, rungs: tuple[Rung, ...]) -> tuple[Rung, ...]:
+    """Add the detection stage where one is free and it would see less displacement than the stages chosen."""
+    if len(rungs) >= ladder.element.stages:
+        return rungs
+    detection = detection_rung(ladder)
+    if detection is None or (rungs and detection.pickup >= rungs[0].pickup):
+        return rungs
+    return (detection, *rungs)
+
+
+def _stages(ladder: Ladder, rungs: tuple[Rung, ...]) -> list[Stage]:
+    element = ladder.element
+    stages = []
+    for number in range(1, element.stages + 1):
+        if number > len(rungs):
+            stages.append(Stage(element.function, number, False, quantity=element.quantity))
+            continue
+        rung = rungs[number - 1]
+        stages.append(
+            Stage(
+                element.function,
+                number,
+                True,
+                float(ladder.pickups[rung.pickup]),
+                float(ladder.delays[rung.delay]),
+                ladder.dropout_ratio,
+                ladder.reset,
+                ladder.hold_s,
+                "any",
+                "trip",
+                element.quantity,
+            )
+        )
+    return stages
+
+
+def _why_off(
+    evidence: Evidence, function: Function, chosen: dict[Function, tuple[Rung, ...]], wanted: tuple[BoolArray, ...]
+) -> str:
+    ladder = evidence.ladders.get(function)
+    if ladder is None:
+        return "the device does not have it"
+    if chosen[function]:
+        return "a further stage would clear less than 2 % more"
+    if not any(w.any() for w in wanted):
+        return "no modelled break state harms anything"
+    if ladder.element.line_to_line_only:
+        return "it measures line-to-line quantities only, which a lost neutral does not move"
+    if demand(ladder, evidence.scenarios, wanted).reachable == 0:
+        return "no harmful break state reaches its settable range"
+    if not np.isfinite(ladder.clearing[ladder.fastest()]).any():
+        return "none of its pickups has a secure delay"
+    if function is Function.UNBALANCE:
+        return "it adds no core state and less than 2 % of the others"
+    return "no secure setting clears a harmful state in time"

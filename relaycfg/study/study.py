@@ -1,0 +1,174 @@
+"""derive and check: the same evidence, the same judgement, on chosen or on existing settings."""
+
+from dataclasses import replace
+
+import numpy as np
+
+from relaycfg.model.cases import Case, Course, Segment
+from relaycfg.model.device import Function
+from relaycfg.model.geometry import BoolArray
+from relaycfg.model.results import Harm, Operation, PlanePoint, Share, Study
+from relaycfg.model.settings import Settings
+from relaycfg.model.site import Relay, Site
+from relaycfg.study.asymmetry import smallest_asymmetry, worked_break
+from relaycfg.study.breaks import break_study
+from relaycfg.study.case_verdicts import case_results
+from relaycfg.study.choice import harmful_states
+from relaycfg.study.closed import closed_groups
+from relaycfg.study.corridors import corridors
+from relaycfg.study.evidence import Evidence, gather
+from relaycfg.study.feeds import feed_ranges
+from relaycfg.study.findings import findings
+from relaycfg.study.margins import security
+from relaycfg.study.place_summary import HARMS
+from relaycfg.study.scenarios import AS_MODELLED, Scenarios
+from relaycfg.study.schedule import test_schedule
+from relaycfg.study.settle import Settled, settle
+from relaycfg.study.shares import share
+from relaycfg.study.stage_results import stage_results
+from relaycfg.study.stages import ActiveStage, active_stages, clears, operating_s
+
+PLANE_POINTS = 240
+DEAD_S = 1.0
+
+
+def derive(site: Site, samples: int, seed: int) -> Study:
+    """Settings for a new installation with all their evidence. The site must have a relay (ValueError)."""
+    evidence = gather(site, _relay(site), samples, seed)
+    settled = settle(evidence)
+    return _judge(evidence, settled.settings, settled, existing=False)
+
+
+def check(site: Site, settings: Settings, samples: int, seed: int) -> Study:
+    """Existing settings against the same evidence; what derive would choose stands behind each remedy."""
+    evidence = gather(site, _relay(site), samples, seed)
+    return _judge(evidence, settings, settle(evidence), existing=True)
+
+
+def _relay(site: Site) -> Relay:
+    if site.relay is None:
+        raise ValueError("the site has no relay")
+    return site.relay
+
+
+def _judge(evidence: Evidence, settings: Settings, settled: Settled, existing: bool) -> Study:
+    active = active_stages(evidence, settings)
+    evidence = _with_energising(evidence)
+    wanted = harmful_states(evidence.scenarios)
+    securities = {a.stage.label: security(a) for a in active}
+    cases = case_results(evidence, settings, active, securities)
+    left = tuple(w & ~_cleared(active, s, evidence) for s, w in zip(evidence.scenarios, wanted, strict=True))
+    closed = closed_groups(evidence, wanted)
+    places = break_study(evidence, active)
+    feeds = feed_ranges(evidence)
+    return Study(
+        evidence.site,
+        evidence.relay.device,
+        "check" if existing else "derive",
+        evidence.seed,
+        evidence.samples,
+        settings,
+        stage_results(evidence, settings, active, securities, wanted, {} if existing else settled.off_reason),
+        cases,
+        places,
+        corridors(evidence),
+        closed,
+        sum(int(m.sum()) for m in left),
+        findings(
+            evidence, settings, settled, active, securities, cases, left, closed, places.summaries, feeds, existing
+        ),
+        test_schedule(evidence, active),
+        worked_break(evidence),
+        _plane(evidence, active),
+        _standing_v0(evidence),
+        tuple((f"{f.what}, {f.between}", f.lowest_v, f.highest_v) for f in feeds),
+        smallest_asymmetry(evidence, active),
+        _coverage(evidence, active),
+        evidence.site.digest,
+    )
+
+
+def _cleared(active: tuple[ActiveStage, ...], scenario: Scenarios, evidence: Evidence) -> BoolArray:
+    cleared = np.zeros(scenario.deadline_s.shape, bool)
+    for stage in active:
+        cleared |= clears(stage, scenario, evidence)
+    return cleared
+
+
+def _with_energising(evidence: Evidence) -> Evidence:
+    """Add the case of switching on with the neutral already open: start-up inhibits must not hide it."""
+    worst: tuple[float, Scenarios | None, int] = (0.0, None, 0)
+    for scenario in evidence.scenarios:
+        volts = np.where(scenario.harmful & scenario.resolved, scenario.highest_v, 0.0)
+        state = int(np.argmax(volts))
+        if volts[state] > worst[0]:
+            worst = (float(volts[state]), scenario, state)
+    volts_v, scenario_, state = worst
+    if scenario_ is None:
+        return evidence
+    dead = Segment(DEAD_S, np.zeros(scenario_.taps.shape[1], complex))
+    course = Course("worst break state", (dead, Segment(float("inf"), scenario_.taps[state])))
+    case = Case(
+        len(evidence.cases) + 1,
+        "Energising with the neutral already open",
+        "trip",
+        "network",
+        "computed",
+        False,
+        (course,),
+        f"break at {scenario_.place}, {volts_v:.1f} V, supply {scenario_.level}",
+    )
+    return replace(evidence, cases=(*evidence.cases, case))
+
+
+def _plane(evidence: Evidence, active: tuple[ActiveStage, ...]) -> tuple[PlanePoint, ...]:
+    """The first states of each seen place at nominal supply, as modelled."""
+    shown = [s for s in evidence.scenarios if s.level == "nominal" and s.model == AS_MODELLED]
+    each = PLANE_POINTS // max(len(shown), 1)
+    points = []
+    for scenario in shown:
+        operated = operating_s(active, scenario, evidence)
+        for k in range(min(each, len(operated))):
+            harm: Harm = HARMS[int(scenario.high[k]) + 2 * int(scenario.low[k])]
+            late = operated[k] > scenario.deadline_s[k]
+            operation: Operation = "none" if not np.isfinite(operated[k]) else "late" if late else "in time"
+            points.append(PlanePoint(complex(scenario.v0[k]), harm, operation))
+    return tuple(points)
+
+
+def _standing_v0(evidence: Evidence) -> float:
+    """Largest V0 of the standing cases [V]."""
+    taps = [s.tap for case in evidence.cases if case.standing for c in case.courses for s in c.segments]
+    return max(float(abs(t[:-1].mean())) for t in taps)
+
+
+def _coverage(evidence: Evidence, active: tuple[ActiveStage, ...]) -> dict[str, Share]:
+    """Shares at nominal supply over the places seen; a state counts only if both load models agree."""
+    nominal = [s for s in evidence.scenarios if s.level == "nominal"]
+    pairs = list(zip(nominal[::2], nominal[1::2], strict=True))
+    sets = {
+        "59": (Function.OVERVOLTAGE,),
+        "27": (Function.UNDERVOLTAGE,),
+        "59 + 27": (Function.OVERVOLTAGE, Function.UNDERVOLTAGE),
+        "59N": (Function.DISPLACEMENT,),
+        "all": tuple(Function),
+    }
+    found = {}
+    for name, functions in sets.items():
+        mine = tuple(a for a in active if a.function in functions)
+        if not mine:
+            continue
+        harmed = cleared = 0
+        for modelled, impedance in pairs:
+            either = (modelled.harmful | impedance.harmful) & modelled.resolved & impedance.resolved
+            both = np.ones(len(either), bool)
+            for scenario in (modelled, impedance):
+                both &= ~scenario.harmful | _cleared(mine, scenario, evidence)
+            harmed += int(either.sum())
+            cleared += int((either & both).sum())
+        found[f"cleared in time by {name}"] = share(cleared, harmed)
+        seen = sum(
+            int(np.isfinite(np.maximum(*(operating_s(mine, s, evidence) for s in pair))).sum()) for pair in pairs
+        )
+        found[f"seen by {name}"] = share(seen, sum(len(m.resolved) for m, _ in pairs))
+    return found

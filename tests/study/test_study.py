@@ -1,0 +1,188 @@
+"""derive, check and breaks on an invented site: what is seen, what is not, and what has to change."""
+
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from relaycfg.model.device import Function
+from relaycfg.model.results import Study
+from relaycfg.model.settings import Settings, Stage
+from relaycfg.study import breaks, check, derive
+from tests.study import yard
+
+
+@pytest.fixture(scope="module")
+def derived(tmp_path_factory: pytest.TempPathFactory) -> Study:
+    return derive(yard.site(tmp_path_factory.mktemp("yard")), 400, 1)
+
+
+def stage(function: Function, number: int, pickup: float, delay_s: float, **more: object) -> Stage:
+    ratio = 1.02 if function is Function.UNDERVOLTAGE else 0.95 if function is Function.DISPLACEMENT else 0.97
+    return replace(Stage(function, number, True, pickup, delay_s, ratio), **more)  # type: ignore[arg-type]
+
+
+def with_stages(study: Study, *stages: Stage) -> Settings:
+    return replace(study.settings, stages=stages)
+
+
+def test_derived_settings_have_no_exception_and_pass_their_own_check(derived: Study) -> None:
+    assert derived.exceptions == 0
+    again = check(derived.site, derived.settings, 400, 1)
+    assert again.exceptions == 0
+    assert all(c.passed for c in again.cases)
+
+
+def test_every_active_stage_is_secure_with_margins_and_bounds(derived: Study) -> None:
+    on = [s for s in derived.stages if s.stage.on]
+    assert {s.stage.function for s in on} >= {Function.OVERVOLTAGE, Function.DISPLACEMENT}
+    for s in on:
+        assert s.secure
+        assert s.margins is not None
+        assert s.margins.security_v is not None
+        assert s.margins.security_v > 0
+        assert {(b.of, b.side) for b in s.bounds} >= {("delay", "not below")}
+
+
+def test_the_next_case_fails_just_beyond_the_printed_margin(derived: Study) -> None:
+    # The margin is exact: moving the pickup by it makes a must-hold case trip, moving it by less does not.
+    for found in derived.stages:
+        if not found.stage.on or found.margins is None or found.margins.security_v is None:
+            continue
+        element = derived.device.element(found.stage.function)
+        assert element is not None
+        sign = -1.0 if found.stage.function is Function.UNDERVOLTAGE else 1.0
+        # The error band scales with the pickup, so the shift of the most sensitive end is converted.
+        scale = found.stage.pickup / abs(
+            found.stage.pickup - sign * float(element.accuracy.pickup_error(found.stage.pickup))
+        )
+        if element.accuracy.pickup_error(found.stage.pickup) <= 0.5 + 1e-9:
+            scale = 1.0
+        for factor, secure in ((0.97, True), (1.03, False)):
+            moved = replace(found.stage, pickup=found.stage.pickup - sign * scale * factor * found.margins.security_v)
+            study = check(derived.site, with_stages(derived, moved), 20, 1)
+            assert study.stages[0].secure is secure, found.stage.label
+
+
+def test_an_insecure_stage_names_case_volts_seconds_and_what_to_turn(derived: Study) -> None:
+    bad = stage(Function.OVERVOLTAGE, 1, 253.0, 0.1)
+    study = check(derived.site, with_stages(derived, bad), 200, 1)
+    finding = next(f for f in study.findings if f.about == "59 stage 1")
+    assert finding.exception
+    assert "253.0 V 0.1 s, trips in case" in finding.sentence
+    assert "to hold, at this delay" in finding.sentence
+    assert "at this pickup no delay is long enough" in finding.sentence
+    assert "from 253 to" in finding.do
+
+
+def test_a_blunt_setting_leaves_core_states_and_the_remedy_switches_stages_on(derived: Study) -> None:
+    study = check(derived.site, with_stages(derived, stage(Function.OVERVOLTAGE, 1, 380.0, 5.0)), 200, 1)
+    finding = next(f for f in study.findings if f.about == "break at source")
+    assert finding.exception
+    assert "core scenarios are not cleared in time" in finding.sentence
+    assert "switch 59N stage 1 on" in finding.do
+
+
+def test_classes_of_a_place_add_up_to_all_states(derived: Study) -> None:
+    for place in derived.breaks.summaries:
+        assert sum(s.count for s in place.classes.values()) + place.unresolved == place.samples
+
+
+def test_a_break_downstream_of_the_tap_is_reported_as_not_seen(derived: Study) -> None:
+    shed = next(p for p in derived.breaks.summaries if p.at == "Shed")
+    assert not shed.seen
+    assert "not upstream of the relay's tap at Main" in shed.why_not
+    assert any(f.about == "break at Shed" and "is not seen" in f.sentence for f in derived.findings)
+    assert (derived.breaks.seen_places, derived.breaks.places) == (2, 3)
+
+
+def test_a_balanced_board_is_not_detectable(tmp_path: Path) -> None:
+    study = derive(yard.site(tmp_path, loads=yard.BALANCED), 100, 1)
+    assert any("break at Main" in n and "not detectable by any voltage element" in n for n in study.breaks.notes)
+    main = next(p for p in study.breaks.summaries if p.at == "Main")
+    assert main.undetected.count == main.samples
+
+
+def test_a_device_that_measures_line_to_line_cannot_see_a_lost_neutral(tmp_path: Path) -> None:
+    over = yard.ELEMENT.format(function="59", stages=1, low=400.0, high=500.0, step=1.0, ratios="[0.97]", more="")
+    study = derive(yard.site(tmp_path, elements=over, measures="l-l"), 100, 1)
+    assert study.breaks.seen_places == 0
+    assert all("line to line only" in p.why_not for p in study.breaks.summaries if p.at != "Shed")
+    assert study.exceptions > 0
+
+
+def test_n_to_pe_is_blind_upstream_of_the_split_in_tn_c_s(tmp_path: Path) -> None:
+    site = yard.site(tmp_path, earthing="TN-C-S", displacement_from="n-to-earth", elements=yard.DISPLACEMENT)
+    study = breaks(site, samples=50, seed=1)
+    main = next(p for p in study.summaries if p.at == "Main")
+    assert not main.seen
+    assert "N and PE move together" in main.why_not
+    row = next(r for r in study.rows if r.at == "Main" and r.state == "connected")
+    assert row.relays["R1"].n_pe_v == pytest.approx(0.0, abs=1e-6)
+    assert row.relays["R1"].v0_v > 20
+
+
+def test_a_coil_on_the_floating_system_is_an_exception(tmp_path: Path) -> None:
+    relay = yard.RELAY.replace(
+        'trip_coil = { kind = "shunt", from = "auxiliary", range_v = [19, 29] }',
+        'trip_coil = { kind = "shunt", from = "L1-N", range_v = [195, 253] }',
+    )
+    study = derive(yard.site(tmp_path, relay=relay), 200, 1)
+    finding = next(f for f in study.findings if f.about.startswith("trip coil"))
+    assert finding.exception
+    assert "fed L1-N from the floating system" in finding.sentence
+
+
+def test_switching_on_with_the_neutral_open_still_trips(derived: Study) -> None:
+    case = derived.cases[-1]
+    assert (case.name, case.expect, case.outcome) == ("Energising with the neutral already open", "trip", "trip")
+
+
+def test_one_break_worked_by_hand_agrees_with_the_solver(derived: Study) -> None:
+    # Millman's theorem without the line impedances: within their voltage drop.
+    assert derived.worked is not None
+    assert derived.worked.l_n_v == pytest.approx(derived.worked.solver_l_n_v, abs=5.0)
+    total = sum(derived.worked.admittance_s)
+    emf = derived.worked.emf_v * derived.site.supply.geometry.phasors
+    assert derived.worked.shift_v == pytest.approx(complex((emf * derived.worked.admittance_s).sum() / total))
+
+
+@pytest.mark.parametrize(("pickup", "ratio"), [(253.0, 1.651), (264.5, 2.036), (276.0, 2.482), (300.0, 3.718)])
+def test_the_smallest_asymmetry_equals_the_worked_table(tmp_path: Path, pickup: float, ratio: float) -> None:
+    # Own arithmetic, reference table detection-one-heavy: bisection on the closed form, k:1:1, 230 V.
+    exact = yard.OVER.replace("step = 1.0", "step = 0.5").replace(
+        "pickup_percent = 1.0, pickup_v = 0.5", "pickup_percent = 0.0, pickup_v = 1e-6"
+    )
+    site = yard.site(tmp_path, elements=exact)
+    settings = Settings("R1", "Test relay", "", (stage(Function.OVERVOLTAGE, 1, pickup, 5.0),), 0.5, "by hand")
+    assert check(site, settings, 10, 1).smallest_asymmetry["59"] == pytest.approx(ratio, abs=0.001)
+
+
+def test_the_same_seed_gives_the_same_study(derived: Study) -> None:
+    assert repr(derive(derived.site, 400, 1)) == repr(derived)
+
+
+def test_automatic_reconnection_is_an_exception(derived: Study) -> None:
+    study = check(derived.site, replace(derived.settings, after_any_trip="automatic"), 50, 1)
+    assert any(f.about == "reconnect" and f.exception for f in study.findings)
+
+
+def test_settings_a_device_does_not_have_are_exceptions(derived: Study) -> None:
+    odd = stage(Function.OVERVOLTAGE, 1, 300.3, 5.0)
+    study = check(derived.site, with_stages(derived, odd), 50, 1)
+    assert any("pickup 300.3 is not on 231 to 420 by 1" in f.sentence for f in study.findings)
+
+
+def test_phases_all_never_sees_a_lost_neutral(derived: Study) -> None:
+    every = stage(Function.OVERVOLTAGE, 1, 275.0, 4.0, phases="all")
+    study = check(derived.site, with_stages(derived, every), 100, 1)
+    assert any("asks for all phases" in f.sentence and f.exception for f in study.findings)
+    assert study.coverage["seen by 59"].count == 0
+
+
+def test_breaks_reports_the_sound_network_and_every_place(derived: Study) -> None:
+    study = breaks(derived.site, samples=50, seed=1, state="connected")
+    assert [r.at for r in study.rows] == ["none", "source", "Main", "Shed"]
+    sound = study.rows[0].boards["Main"].l_n_v
+    assert np.allclose(sound, 230, atol=8)
