@@ -1,6 +1,7 @@
 """The network of one site: every break place, every load state, the voltages at every board."""
 
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -9,10 +10,10 @@ from relaycfg.model.geometry import BoolArray, ComplexArray
 from relaycfg.model.site import NONE, Site
 from relaycfg.network.branches import build_branches
 from relaycfg.network.loadlaw import Law, outside
-from relaycfg.network.reduction import reduce_network
-from relaycfg.network.solver import solve_block
+from relaycfg.network.reduction import Reduction, reduce_network
+from relaycfg.network.solver import Solution, chase, joined, pick, solve_block
 from relaycfg.network.states import STARTING, LoadStates
-from relaycfg.network.sweeps import Problem
+from relaycfg.network.sweeps import Iterate, Problem
 
 BLOCK = 64_000
 """Branches times states solved at once: what stays in a core's own cache."""
@@ -84,32 +85,41 @@ class Network:
         """
         if joint_ohm is not None and joint_ohm < 0:
             raise ValueError(f"the joint has {joint_ohm} ohm; give zero or more")
-        reduction, count = self._reduction, states.count
         order, problem = self._problem(place, emf, joint_ohm)
-        show = reduction.show_current[:, order]
-        shown = np.empty((len(show), count), complex)
-        joint_v, joint_a = np.zeros(count, complex), np.zeros(count, complex)
-        flags = {f: np.zeros(count, bool) for f in ("converged", "below_band", "above_band", "unstable", "several")}
-        starts = [FAR_START * e for e in emf] if look_for_roots and problem.joint else []
-        block = max(1, BLOCK // max(len(order), 1))
+        run = _Run(self._reduction, place, order, problem, states.count, joint_ohm is not None)
+        self._sweep(run, states, all_impedance, 0j)
+        several = np.zeros(states.count, bool)
+        if look_for_roots and problem.joint:
+            for start in FAR_START * emf:
+                other = _Run(self._reduction, place, order, problem, states.count, joint_ohm is not None)
+                self._sweep(other, states, all_impedance, complex(start))
+                apart = np.abs(other.joint_v - run.joint_v) > SAME_ROOT_V
+                several |= run.flags["converged"] & other.flags["converged"] & apart
+        run.shown += (self._reduction.show_emf @ emf)[:, None]
+        return self._solved(run, several)
+
+    def _sweep(self, run: "_Run", states: LoadStates, all_impedance: bool, start: complex) -> None:
+        """All states block by block, then those that still move, pooled over the blocks."""
+        count = states.count
+        block = max(1, BLOCK // max(len(run.order), 1))
+        left: list[NDArray[np.intp]] = []
+        moving: list[Iterate] = []
         for first in range(0, count, block):
-            part = slice(first, min(first + block, count))
-            law = self._law(states, part, order, all_impedance)
-            found = solve_block(problem, law)
-            shown[:, part] = show @ found.current
-            if problem.joint:
-                shown[:, part] += reduction.show_joint[place][:, None] * found.joint_v
-                joint_v[part] = found.joint_v
-            if place != NONE and joint_ohm is not None:
-                joint_a[part] = problem.c0 - problem.back @ found.current + problem.y * found.joint_v
-            flags["converged"][part], flags["unstable"][part] = found.converged, found.unstable
-            flags["below_band"][part], flags["above_band"][part] = outside(law, found.magnitude)
-            for start in starts:
-                other = solve_block(problem, law, complex(start))
-                apart = np.abs(other.joint_v - found.joint_v) > SAME_ROOT_V
-                flags["several"][part] |= found.converged & other.converged & apart
-        shown += (reduction.show_emf @ emf)[:, None]
-        return self._solved(shown, joint_v, joint_a, flags)
+            part = np.arange(first, min(first + block, count))
+            law = self._law(states, part, run.order, all_impedance)
+            found, at = solve_block(run.problem, law, start)
+            run.keep(part, law, found)
+            rest = np.flatnonzero(~found.converged)
+            if len(rest):
+                left.append(part[rest])
+                moving.append(pick(at, rest))
+        if not left:
+            return
+        pool, iterate = np.concatenate(left), joined(moving)
+        for first in range(0, len(pool), block):
+            among = np.arange(first, min(first + block, len(pool)))
+            law = self._law(states, pool[among], run.order, all_impedance)
+            run.keep(pool[among], law, chase(run.problem, law, pick(iterate, among), start))
 
     def _problem(self, place: str, emf: ComplexArray, joint_ohm: float | None) -> tuple[NDArray[np.intp], Problem]:
         """The solver's problem, and the order of the branches in it: those the joint acts on first."""
@@ -135,7 +145,7 @@ class Network:
             np.zeros(len(h), complex),
         )
 
-    def _law(self, states: LoadStates, part: slice, order: NDArray[np.intp], all_impedance: bool) -> Law:
+    def _law(self, states: LoadStates, part: NDArray[np.intp], order: NDArray[np.intp], all_impedance: bool) -> Law:
         """The load law of a block of states, branches in the problem's order."""
         branches = self._branches
         z_re, z_im, i_re, i_im, p_re, p_im = branches.coefficients(
@@ -144,34 +154,47 @@ class Network:
         low_v, high_v = branches.low_v[order, None], branches.high_v[order, None]
         return Law(z_re, z_im, i_re, i_im, p_re, p_im, low_v, high_v)
 
-    def _solved(
-        self, shown: ComplexArray, joint_v: ComplexArray, joint_a: ComplexArray, flags: dict[str, BoolArray]
-    ) -> Solved:
+    def _solved(self, run: "_Run", several: BoolArray) -> Solved:
         """Rows of the reduction's output by name, nan where there is nothing to measure."""
         reduction = self._reduction
-        part = {name: shown[rows] for name, rows in reduction.rows.items()}
+        part = {name: run.shown[rows] for name, rows in reduction.rows.items()}
         without_pe = ~np.array(reduction.has_pe, bool)
         part["n_pe"][without_pe] = part["pe_earth"][without_pe] = np.nan
         if not reduction.tied:
             part["n_earth"][:] = part["pe_earth"][:] = np.nan
-        l_n = part["l_n"].reshape(len(self.boards), self._lines, len(joint_v))
-        solved = Solved(
-            l_n,
-            part["n_earth"],
-            part["n_pe"],
-            part["pe_earth"],
-            part["neutral_a"],
-            joint_v,
-            joint_a,
-            flags["converged"],
-            flags["below_band"],
-            flags["above_band"],
-            flags["unstable"],
-            flags["several"],
-        )
+        part["l_n"] = part["l_n"].reshape(len(self.boards), self._lines, -1)
+        solved = Solved(joint_v=run.joint_v, joint_a=run.joint_a, several=several, **part, **run.flags)
         for field in fields(solved):
             getattr(solved, field.name).setflags(write=False)
         return solved
+
+
+class _Run:
+    """What one solution of all states gathers: shown phasors without the EMF's part, the joint, the statuses."""
+
+    def __init__(
+        self, reduction: Reduction, place: str, order: NDArray[np.intp], problem: Problem, count: int, finite: bool
+    ) -> None:
+        self.order, self.problem = order, problem
+        self._show = reduction.show_current[:, order]
+        self._show_joint = reduction.show_joint[place][:, None] if problem.joint else None
+        self._finite = finite and place != NONE
+        self.shown = np.empty((len(self._show), count), complex)
+        self.joint_v, self.joint_a = np.zeros(count, complex), np.zeros(count, complex)
+        names = ("converged", "below_band", "above_band", "unstable")
+        self.flags: dict[str, Any] = {name: np.zeros(count, bool) for name in names}
+
+    def keep(self, part: NDArray[np.intp], law: Law, found: Solution) -> None:
+        """Write the solution of the states ``part``."""
+        problem, flags = self.problem, self.flags
+        self.shown[:, part] = self._show @ found.current
+        if self._show_joint is not None:
+            self.shown[:, part] += self._show_joint * found.joint_v
+            self.joint_v[part] = found.joint_v
+        if self._finite:
+            self.joint_a[part] = problem.c0 - problem.back @ found.current + problem.y * found.joint_v
+        flags["converged"][part], flags["unstable"][part] = found.converged, found.unstable
+        flags["below_band"][part], flags["above_band"][part] = outside(law, found.magnitude)
 
 
 def healthy_emf(site: Site, scale: float = 1.0) -> ComplexArray:

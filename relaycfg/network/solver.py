@@ -13,10 +13,10 @@ from relaycfg.network.sweeps import Iterate, Problem, Sweeper
 TOLERANCE_V = 1e-7
 SLOWEST_RATE = 0.1
 """Least contraction a sweep that the error estimate believes in; smaller measured ones may be luck."""
-FAST_SWEEPS = 5
-EXACT_SWEEPS = 2
-MORE_SWEEPS = 12
-PATIENT_SWEEPS = 120
+FAST_SWEEPS = 6
+EXACT_SWEEPS = 3
+MORE_SWEEPS = (2, 2, 2, 3, 4)
+PATIENT_SWEEPS = (20, 20, 40, 80, 160, 320)
 FIRST_CAP_V = 80.0
 PATIENT_CAP_V = 20.0
 
@@ -46,12 +46,11 @@ def leak(problem: Problem, law: Law) -> FloatArray:
     return across
 
 
-def solve_block(problem: Problem, law: Law, start_w: complex = 0j) -> Solution:
-    """Solve the states of one block; those the usual schedule leaves restart from the intact network.
+def solve_block(problem: Problem, law: Law, start_w: complex = 0j) -> tuple[Solution, Iterate]:
+    """The usual schedule for the states of one block: most have converged after it, the rest goes to ``chase``.
 
-    Schedule: FAST_SWEEPS in single precision, EXACT_SWEEPS in double with the last slopes, MORE_SWEEPS with fresh ones
-    for the states still moving, PATIENT_SWEEPS of small steps from the start for what is left. A state has converged
-    when its last move times its rate is below TOLERANCE_V; without a stable state near the intact one it may not.
+    FAST_SWEEPS in single precision, then EXACT_SWEEPS in double with the last slopes. A state has converged when its
+    last move times its rate is below TOLERANCE_V.
     """
     leak_s = leak(problem, law)
     problem = problem.about(middle(law))
@@ -64,15 +63,22 @@ def solve_block(problem: Problem, law: Law, start_w: complex = 0j) -> Solution:
     double = Sweeper(problem, law, leak_s, np.float64)
     for _ in range(EXACT_SWEEPS):
         before, (size, _) = size, double.sweep(at, jac)
-    converged = _error(before, size) < TOLERANCE_V
-    for restart, sweeps in ((False, MORE_SWEEPS), (True, PATIENT_SWEEPS)):
-        if converged.all():
-            break
-        rest = np.flatnonzero(~converged)
-        part = _begin(problem, len(rest), start_w, PATIENT_CAP_V, np.float64) if restart else _pick(at, rest)
-        converged[rest] = _until_still(Sweeper(problem, law.states(rest), leak_s[:, rest], np.float64), part, sweeps)
-        for name in at.__dataclass_fields__:
-            getattr(at, name)[..., rest] = getattr(part, name)
+    return _finish(problem, law, leak_s, at, _error(before, size) < TOLERANCE_V), at
+
+
+def chase(problem: Problem, law: Law, at: Iterate, start_w: complex = 0j) -> Solution:
+    """States that ``solve_block`` left moving: fresh slopes from where they are, then small steps from the start.
+
+    Without a stable state near the intact one a state may not converge.
+    """
+    leak_s = leak(problem, law)
+    problem = problem.about(middle(law))
+    converged = _until_still(problem, law, leak_s, at, MORE_SWEEPS)
+    rest = np.flatnonzero(~converged)
+    if len(rest):
+        again = _begin(problem, len(rest), start_w, PATIENT_CAP_V, np.float64)
+        converged[rest] = _until_still(problem, law.states(rest), leak_s[:, rest], again, PATIENT_SWEEPS)
+        _put(at, rest, again)
     return _finish(problem, law, leak_s, at, converged)
 
 
@@ -98,9 +104,20 @@ def _begin(problem: Problem, states: int, w: complex, cap: float, kind: type[np.
     )
 
 
-def _pick(at: Iterate, chosen: NDArray[np.intp]) -> Iterate:
+def pick(at: Iterate, chosen: NDArray[np.intp]) -> Iterate:
     """Copies of some of the states."""
     return Iterate(*(getattr(at, name)[..., chosen] for name in at.__dataclass_fields__))
+
+
+def joined(parts: list[Iterate]) -> Iterate:
+    """The states of several iterates one after the other."""
+    names = parts[0].__dataclass_fields__
+    return Iterate(*(np.concatenate([getattr(part, name) for part in parts], axis=-1) for name in names))
+
+
+def _put(at: Iterate, chosen: NDArray[np.intp], part: Iterate) -> None:
+    for name in at.__dataclass_fields__:
+        getattr(at, name)[..., chosen] = getattr(part, name)
 
 
 def _error(before: FloatArray, last: FloatArray) -> FloatArray:
@@ -110,14 +127,20 @@ def _error(before: FloatArray, last: FloatArray) -> FloatArray:
     return estimate
 
 
-def _until_still(sweeper: Sweeper, at: Iterate, sweeps: int) -> BoolArray:
-    """Sweep until all states have converged or ``sweeps`` are spent; which have converged."""
-    size, _ = sweeper.sweep(at)
-    done = np.zeros(len(size), bool)
-    for _ in range(sweeps):
-        before, (size, _) = size, sweeper.sweep(at)
-        done = _error(before, size) < TOLERANCE_V
-        if done.all():
+def _until_still(problem: Problem, law: Law, leak_s: FloatArray, at: Iterate, rounds: tuple[int, ...]) -> BoolArray:
+    """Rounds of sweeps, each on the states that still move; which states [states] have converged in the end."""
+    done = np.zeros(leak_s.shape[1], bool)
+    moving = np.arange(len(done))
+    for sweeps in rounds:
+        sweeper = Sweeper(problem, law.states(moving), leak_s[:, moving], np.float64)
+        part = pick(at, moving)
+        size, _ = sweeper.sweep(part)
+        for _ in range(sweeps - 1):
+            before, (size, _) = size, sweeper.sweep(part)
+        _put(at, moving, part)
+        done[moving] = _error(before, size) < TOLERANCE_V
+        moving = np.flatnonzero(~done)
+        if not len(moving):
             break
     return done
 

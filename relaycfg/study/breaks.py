@@ -4,10 +4,10 @@ import numpy as np
 
 from relaycfg.model.results import BreakRow, BreakStudy, PlaceSummary
 from relaycfg.model.site import NONE, Site
-from relaycfg.network import LoadStates, Network, connected, corners, join, least, sampled
+from relaycfg.network import Network, connected, corners, join, least, sampled
 from relaycfg.study.break_rows import break_rows
 from relaycfg.study.evidence import Evidence
-from relaycfg.study.levels import supply_levels
+from relaycfg.study.levels import NOMINAL, supply_levels
 from relaycfg.study.place_summary import BALANCED_PU, summarise, why_not_seen
 from relaycfg.study.scenarios import Scenarios
 from relaycfg.study.stages import ActiveStage
@@ -59,26 +59,18 @@ def break_study(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> BreakStu
         for place in (NONE, *site.places)
         for row in break_rows(site, network, place, state, evidence.levels.nominal, None)
     )
-    summaries = tuple(_summary(evidence, place, by_place.get(place), stages, evidence.states) for place in site.places)
+    summaries = tuple(
+        summarise(site, network, place, evidence.solved[place], evidence.states, by_place.get(place), evidence, stages)
+        for place in site.places
+    )
     seen = sum(s.seen for s in summaries)
     return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows))
-
-
-def _summary(
-    evidence: Evidence,
-    place: str,
-    pair: tuple[Scenarios, Scenarios] | None,
-    stages: tuple[ActiveStage, ...],
-    states: LoadStates,
-) -> PlaceSummary:
-    solved = evidence.network.solve(place, states, evidence.levels.nominal)
-    return summarise(evidence.site, evidence.network, place, solved, states, pair, evidence, stages)
 
 
 def _nominal_pairs(evidence: Evidence) -> dict[str, tuple[Scenarios, Scenarios]]:
     pairs: dict[str, list[Scenarios]] = {}
     for scenario in evidence.scenarios:
-        if scenario.level == "nominal":
+        if scenario.level == NOMINAL:
             pairs.setdefault(scenario.place, []).append(scenario)
     return {place: (both[0], both[1]) for place, both in pairs.items()}
 

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from relaycfg.model.cases import Case
 from relaycfg.model.device import Element, Function
 from relaycfg.model.site import Relay, Site
-from relaycfg.network import LoadStates, Network, sampled
+from relaycfg.network import LoadStates, Network, Solved, sampled
 from relaycfg.study.cases import must_hold_cases
 from relaycfg.study.ladder import Ladder
 from relaycfg.study.levels import Levels, healthy_taps, supply_levels
@@ -24,6 +24,8 @@ class Evidence:
     states: LoadStates
     cases: tuple[Case, ...]
     ladders: dict[Function, Ladder]
+    solved: dict[str, Solved]
+    """Every break place at the nominal level, as modelled."""
     scenarios: tuple[Scenarios, ...]
     seed: int
     samples: int
@@ -37,8 +39,9 @@ def gather(site: Site, relay: Relay, samples: int, seed: int) -> Evidence:
     healthy = healthy_taps(site, network, levels, states, relay.measures_at)
     cases = must_hold_cases(site, network, levels, healthy, relay.measures_at)
     ladders = {e.function: ladder_of(site, relay, cases, e) for e in relay.device.elements}
-    scenarios = all_scenarios(site, relay, network, levels, states)
-    return Evidence(site, relay, network, levels, states, cases, ladders, scenarios, seed, samples)
+    solved = {place: network.solve(place, states, levels.nominal) for place in site.places}
+    scenarios = all_scenarios(site, relay, network, levels, states, solved)
+    return Evidence(site, relay, network, levels, states, cases, ladders, solved, scenarios, seed, samples)
 
 
 def ladder_of(site: Site, relay: Relay, cases: tuple[Case, ...], element: Element) -> Ladder:

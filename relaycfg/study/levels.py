@@ -9,6 +9,7 @@ from relaycfg.model.site import NONE, SOURCE, Site
 from relaycfg.network import LoadStates, Network, Solved, connected, corners, healthy_emf, join, least, tap
 
 SCALE_STEPS = 6
+NOMINAL = "nominal"
 
 
 @dataclass(frozen=True)
@@ -21,7 +22,7 @@ class Levels:
 
     def named(self) -> tuple[tuple[str, ComplexArray], ...]:
         """The levels with the names they are printed under."""
-        return (("nominal", self.nominal), ("upper limit", self.upper), ("lower limit", self.lower))
+        return ((NOMINAL, self.nominal), ("upper limit", self.upper), ("lower limit", self.lower))
 
 
 @dataclass(frozen=True)

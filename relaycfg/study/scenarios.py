@@ -11,7 +11,7 @@ from relaycfg.model.site import SOURCE, Relay, Site
 from relaycfg.network import LoadStates, Network, Solved, tap
 from relaycfg.relay import severities
 from relaycfg.study.deadlines import high_deadline_s, is_core, low_deadline_s
-from relaycfg.study.levels import Levels
+from relaycfg.study.levels import NOMINAL, Levels
 
 AS_MODELLED = "as modelled"
 ALL_IMPEDANCE = "all constant impedance"
@@ -52,28 +52,22 @@ def seen_places(site: Site, relay: Relay) -> tuple[str, ...]:
     return tuple(p for p in site.places if p == SOURCE or p in path)
 
 
-def scenarios_of(
-    site: Site, relay: Relay, network: Network, place: str, level: str, emf: ComplexArray, states: LoadStates
-) -> tuple[Scenarios, Scenarios]:
-    """The scenarios of one place at one level: as modelled, and with every load a constant impedance."""
-    modelled = network.solve(place, states, emf)
-    impedance = network.solve(place, states, emf, all_impedance=True)
-    return (
-        judge(site, relay, network, place, level, AS_MODELLED, modelled),
-        judge(site, relay, network, place, level, ALL_IMPEDANCE, impedance),
-    )
-
-
 def all_scenarios(
-    site: Site, relay: Relay, network: Network, levels: Levels, states: LoadStates
+    site: Site, relay: Relay, network: Network, levels: Levels, states: LoadStates, nominal: dict[str, Solved]
 ) -> tuple[Scenarios, ...]:
-    """Every scenario the relay's settings are judged on: the places it can see, at all supply levels."""
-    return tuple(
-        scenario
-        for place in seen_places(site, relay)
-        for level, emf in levels.named()
-        for scenario in scenarios_of(site, relay, network, place, level, emf, states)
-    )
+    """Every scenario the relay's settings are judged on: the places it can see, at all supply levels.
+
+    Two by two: as modelled, then with every load a constant impedance. ``nominal`` holds the places already solved
+    as modelled at the nominal level.
+    """
+    found = []
+    for place in seen_places(site, relay):
+        for level, emf in levels.named():
+            modelled = nominal[place] if level == NOMINAL else network.solve(place, states, emf)
+            impedance = network.solve(place, states, emf, all_impedance=True)
+            found.append(judge(site, relay, network, place, level, AS_MODELLED, modelled))
+            found.append(judge(site, relay, network, place, level, ALL_IMPEDANCE, impedance))
+    return tuple(found)
 
 
 def judge(site: Site, relay: Relay, network: Network, place: str, level: str, model: str, solved: Solved) -> Scenarios:

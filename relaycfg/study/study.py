@@ -19,6 +19,7 @@ from relaycfg.study.corridors import corridors
 from relaycfg.study.evidence import Evidence, gather
 from relaycfg.study.feeds import feed_ranges
 from relaycfg.study.findings import findings
+from relaycfg.study.levels import NOMINAL
 from relaycfg.study.margins import security
 from relaycfg.study.place_summary import HARMS
 from relaycfg.study.scenarios import AS_MODELLED, Scenarios
@@ -123,7 +124,7 @@ def _with_energising(evidence: Evidence) -> Evidence:
 
 def _plane(evidence: Evidence, active: tuple[ActiveStage, ...]) -> tuple[PlanePoint, ...]:
     """The first states of each seen place at nominal supply, as modelled."""
-    shown = [s for s in evidence.scenarios if s.level == "nominal" and s.model == AS_MODELLED]
+    shown = [s for s in evidence.scenarios if s.level == NOMINAL and s.model == AS_MODELLED]
     each = PLANE_POINTS // max(len(shown), 1)
     points = []
     for scenario in shown:
@@ -144,7 +145,7 @@ def _standing_v0(evidence: Evidence) -> float:
 
 def _coverage(evidence: Evidence, active: tuple[ActiveStage, ...]) -> dict[str, Share]:
     """Shares at nominal supply over the places seen; a state counts only if both load models agree."""
-    nominal = [s for s in evidence.scenarios if s.level == "nominal"]
+    nominal = [s for s in evidence.scenarios if s.level == NOMINAL]
     pairs = list(zip(nominal[::2], nominal[1::2], strict=True))
     sets = {
         "59": (Function.OVERVOLTAGE,),
