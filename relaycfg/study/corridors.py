@@ -68,7 +68,7 @@ def _withstand(evidence: Evidence, ladder: Ladder) -> tuple[CurveStep, ...]:
 
 
 def _dots(ladder: Ladder, sign: float) -> tuple[CurveStep, ...]:
-    """Each passing case at its extreme severity, with the time it stays there (window included)."""
+    """Each passing case that goes beyond what stands, at its extreme, with the time it stays there (with window)."""
     runs = ladder.runs
     peak = runs.severity.max(axis=(1, 2))
     seconds = np.diagonal(run_lengths(runs, peak, peak * ladder.dropout_ratio))
@@ -76,6 +76,8 @@ def _dots(ladder: Ladder, sign: float) -> tuple[CurveStep, ...]:
     for k, number in enumerate(runs.cases):
         name = runs.names[k].split(" (")[0]
         best = dots.get(number)
+        if peak[k] <= runs.standing:
+            continue
         if best is None or peak[k] > sign * best.pickup:
             stays = float(seconds[k]) if np.isfinite(seconds[k]) else None
             dots[number] = CurveStep(sign * float(peak[k]), stays, name)

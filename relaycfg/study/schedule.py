@@ -15,18 +15,63 @@ BEYOND = 1.1
 
 def test_schedule(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> tuple[TestPoint, ...]:
     """Two points a stage and line: the pickup, then the time; accept bands from the declared errors."""
-    points: list[TestPoint] = []
-    for active in stages:
-        masking = _masking(evidence, active, stages)
-        for line in _lines(evidence, active):
-            points.append(_pickup_point(evidence, active, line, masking))
-            points.append(_time_point(evidence, active, line, masking))
-    return tuple(points)
+    return tuple(
+        point
+        for active in stages
+        for line in _lines(evidence, active)
+        for point in (_pickup_point(evidence, active, stages, line), _time_point(evidence, active, stages, line))
+    )
 
 
-def _masking(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveStage, ...]) -> str:
+def _lines(evidence: Evidence, active: ActiveStage) -> tuple[str, ...]:
+    geometry = evidence.site.supply.geometry
+    if active.function in (Function.DISPLACEMENT, Function.UNBALANCE):
+        return (geometry.names[0],)
+    return geometry.pair_names if active.ladder.element.quantity == "l-l" else geometry.names
+
+
+def _pickup_point(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveStage, ...], line: str) -> TestPoint:
+    stage, element = active.stage, active.ladder.element
+    error = float(element.accuracy.pickup_error(stage.pickup))
+    unit = _unit(active)
+    own = f" {element.quantity.upper()}" if active.function is Function.DISPLACEMENT else ""
+    return TestPoint(
+        stage.label,
+        line,
+        _injection(evidence, active, line, stage.pickup, "slowly"),
+        f"picks up at {stage.pickup:.1f} {unit}{own}",
+        stage.pickup - error,
+        stage.pickup + error,
+        unit,
+        _masking(evidence, active, stages, stage.pickup),
+    )
+
+
+def _time_point(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveStage, ...], line: str) -> TestPoint:
+    stage, device = active.stage, evidence.relay.device
+    frequency = evidence.site.supply.frequency_hz
+    measuring = window_s(device, frequency) + refresh_s(device, frequency) + evidence.relay.output_s
+    timing = float(active.ladder.element.accuracy.time_error(stage.delay_s))
+    level = stage.pickup / BEYOND if stage.function is Function.UNDERVOLTAGE else stage.pickup * BEYOND
+    return TestPoint(
+        stage.label,
+        line,
+        _injection(evidence, active, line, level, "in one step"),
+        f"output after {stage.delay_s:g} s",
+        max(0.0, stage.delay_s - timing),
+        stage.delay_s + timing + measuring,
+        "s",
+        _masking(evidence, active, stages, level),
+    )
+
+
+def _unit(active: ActiveStage) -> str:
+    return "%" if active.function is Function.UNBALANCE else "V"
+
+
+def _masking(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveStage, ...], level: float) -> str:
     """The other stages that pick up at the injected volts: disabled for the test, and put back."""
-    tap = _injected_tap(evidence, active)
+    tap = _tap_at(evidence, active, level)
     geometry, from_ = evidence.site.supply.geometry, evidence.relay.device.displacement_from
     others = [
         other.stage.label
@@ -37,95 +82,43 @@ def _masking(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveStage,
     return f"disable {', '.join(others)}" if others else "none"
 
 
-def _injected_tap(evidence: Evidence, active: ActiveStage) -> ComplexArray:
-    """The tap [lines + 1] at which the stage under test just picks up on the first line."""
+def _tap_at(evidence: Evidence, active: ActiveStage, level: float) -> ComplexArray:
+    """The injected tap [lines + 1] at which the stage's own quantity stands at ``level``, on the first line."""
     geometry, nominal = evidence.site.supply.geometry, evidence.site.supply.nominal_v
-    lines = len(geometry.names)
     tap: ComplexArray = np.append(nominal * geometry.phasors, 0.0)
-    pickup, quantity = active.stage.pickup, active.ladder.element.quantity
+    quantity = active.ladder.element.quantity
     if quantity == "l-l":
-        tap[:-1] *= pickup / (nominal * geometry.line_to_line_ratio)
+        tap[:-1] *= level / (nominal * geometry.line_to_line_ratio)
     elif active.function is Function.UNBALANCE:
         low, high = 0.0, 1.0
         for _ in range(40):
             middle = (low + high) / 2
             tap[0] = middle * nominal * geometry.phasors[0]
-            reached = severities(active.ladder.element, geometry, tap, "l-n").max() >= pickup
+            reached = severities(active.ladder.element, geometry, tap, "l-n").max() >= level
             low, high = (middle, high) if reached else (low, middle)
     elif active.function is Function.DISPLACEMENT:
         if evidence.relay.device.displacement_from == "n-to-earth":
-            tap[-1] = pickup
+            tap[-1] = level
             return tap
-        change = lines * pickup / (3.0 if quantity == "3v0" else 1.0)
+        change = len(geometry.names) * level / (3.0 if quantity == "3v0" else 1.0)
         if change <= nominal:
             tap[0] -= change * geometry.phasors[0]
         else:
             tap[:-1] = 0
             tap[0] = change
     else:
-        tap[0] = pickup * geometry.phasors[0]
+        tap[0] = level * geometry.phasors[0]
     return tap
 
 
-def _lines(evidence: Evidence, active: ActiveStage) -> tuple[str, ...]:
-    geometry = evidence.site.supply.geometry
-    if active.function in (Function.DISPLACEMENT, Function.UNBALANCE):
-        return (geometry.names[0],)
-    return geometry.pair_names if active.ladder.element.quantity == "l-l" else geometry.names
-
-
-def _pickup_point(evidence: Evidence, active: ActiveStage, line: str, masking: str) -> TestPoint:
-    stage = active.stage
-    error = float(active.ladder.element.accuracy.pickup_error(stage.pickup))
-    inject, factor, unit = _injection(evidence, active, line)
-    return TestPoint(
-        stage.label,
-        line,
-        inject,
-        f"picks up at {stage.pickup:.1f} {unit}{factor}",
-        stage.pickup - error,
-        stage.pickup + error,
-        unit,
-        masking,
-    )
-
-
-def _time_point(evidence: Evidence, active: ActiveStage, line: str, masking: str) -> TestPoint:
-    stage, device = active.stage, evidence.relay.device
-    element = active.ladder.element
-    frequency = evidence.site.supply.frequency_hz
-    measuring = window_s(device, frequency) + refresh_s(device, frequency) + evidence.relay.output_s
-    timing = float(element.accuracy.time_error(stage.delay_s))
-    level = stage.pickup / BEYOND if stage.function is Function.UNDERVOLTAGE else stage.pickup * BEYOND
-    unit = "%" if stage.function is Function.UNBALANCE else "V"
-    return TestPoint(
-        stage.label,
-        line,
-        f"step from {evidence.site.supply.nominal_v:g} V to {level:.1f} {unit} of its own quantity",
-        f"output after {stage.delay_s:g} s",
-        max(0.0, stage.delay_s - timing),
-        stage.delay_s + timing + measuring,
-        "s",
-        masking,
-    )
-
-
-def _injection(evidence: Evidence, active: ActiveStage, line: str) -> tuple[str, str, str]:
-    nominal = evidence.site.supply.nominal_v
-    stage, quantity = active.stage, active.ladder.element.quantity
-    if stage.function is Function.UNBALANCE:
-        return f"all lines {nominal:g} V, lower {line} slowly", f" of {quantity}", "%"
-    if stage.function is Function.DISPLACEMENT:
-        lines = len(evidence.site.supply.geometry.names)
-        phasor = stage.pickup / (3.0 if quantity == "3v0" else 1.0)
-        if evidence.relay.device.displacement_from == "n-to-earth":
-            return "raise N against PE slowly from 0 V", "", "V"
-        lowered = nominal - lines * phasor
-        if lowered >= 0:
-            how = f"all lines {nominal:g} V, lower {line} slowly; due at {lowered:.1f} V"
-        else:
-            how = f"other lines at 0 V, raise {line} slowly; due at {lines * phasor:.1f} V"
-        return how, f" of {quantity.upper()}", "V"
-    direction = "lower" if stage.function is Function.UNDERVOLTAGE else "raise"
-    base = nominal * (active.ladder.line_to_line_ratio if quantity == "l-l" else 1.0)
-    return f"all at {np.round(base, 1):g} V, {direction} {line} slowly", "", "V"
+def _injection(evidence: Evidence, active: ActiveStage, line: str, level: float, how: str) -> str:
+    """What to do at the test set, in words; the volts are those of ``_tap_at``."""
+    nominal, geometry = evidence.site.supply.nominal_v, evidence.site.supply.geometry
+    tap = np.abs(_tap_at(evidence, active, level))
+    if active.ladder.element.quantity == "l-l":
+        return f"all lines from {nominal:g} V {how} to {tap[0]:.1f} V, {level:.1f} V between lines"
+    if active.function is Function.DISPLACEMENT and evidence.relay.device.displacement_from == "n-to-earth":
+        return f"N against PE from 0 V {how} to {tap[-1]:.1f} V"
+    if len(geometry.names) > 1 and tap[1] == 0:
+        return f"other lines at 0 V, {line} from 0 V {how} to {tap[0]:.1f} V"
+    return f"all lines {nominal:g} V, then {line} {how} to {tap[0]:.1f} V"
