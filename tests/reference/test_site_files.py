@@ -171,3 +171,122 @@ def test_lamps_never_exceed_the_line_voltage_and_one_change_moves_all(seed: int,
     assert max(before) <= 250 * np.sqrt(3) + 1e-6
     after = lamps(tmp_path, (watts[0] * 1.3, *watts[1:]), "source").boards["B"].l_n_v
     assert all(abs(a - b) > 0.01 for a, b in zip(after, before, strict=True))
+
+
+def entry(name: str) -> dict[str, Any]:
+    return next(e for e in ENTRIES["example"] if e["id"] == name)
+
+
+def star(
+    folder: Path,
+    loads: list[str],
+    at: str,
+    joint_ohm: float | None = None,
+    star_v: float = 230.0,
+    electrodes: tuple[float, float] | None = None,
+) -> BreakRow:
+    """One board on an ideal source, loads given as the keys after ``between``; electrodes of board and source."""
+    text = (
+        f'[supply]\nsystem = "3ph-4w"\nnominal_v = {star_v}\nearthing = "{"TN-C-S" if electrodes else "TN-S"}"\n'
+        "low_percent = -30\nhigh_percent = 30\n"
+        '[[source]]\nkind = "impedance"\nline_ohm = [0.0, 0.0]\nneutral_ohm = [0.0, 0.0]\nstar_link_ohm = 0\n'
+        f"electrode_ohm = {electrodes[1] if electrodes else 1.0}\n"
+        '[[board]]\nname = "B"\nfed_from = "source"\n'
+    )
+    if electrodes:
+        text += f"neutral_earth_link = true\nelectrode_ohm = {electrodes[0]!r}\n"
+        text += "[board.cable]\nline_ohm = [1e-7, 0.0]\nneutral_ohm = [1e-7, 0.0]\n"
+    for k, keys in enumerate(loads):
+        if keys:
+            text += f'[[load]]\nboard = "B"\nname = "load {k + 1}"\nbetween = "L{k + 1}-N"\n{keys}\n'
+    path = folder / "site.toml"
+    path.write_text(text)
+    return breaks(read_site(path), samples=1, seed=1, at=at, joint_ohm=joint_ohm, state="connected").rows[0]
+
+
+def kw(value: float, pf: float = 1.0) -> str:
+    return f'kw = {value!r}\npf = {pf}\nkind = "constant impedance"' if value else ""
+
+
+def test_a_loose_joint_heats_as_in_the_table(tmp_path: Path) -> None:
+    example = entry("loose-joint")
+    loads = [kw(p) for p in example["inputs"]["load_kw"]]
+    for ohm, amperes, shift, watts, *volts in example["expected"]["rows"]:
+        row = star(tmp_path, loads, "source", ohm)
+        assert row.joint_a == pytest.approx(amperes, abs=0.006)
+        assert row.boards["B"].v0_v == pytest.approx(shift, abs=0.006)
+        assert row.joint_w == pytest.approx(watts, abs=0.06)
+        assert row.boards["B"].l_n_v == pytest.approx(volts, abs=0.06)
+    assert star(tmp_path, loads, "source").boards["B"].l_n_v == pytest.approx(
+        example["expected"]["open_l_n_v"], abs=0.06
+    )
+
+
+def test_a_loose_joint_reaches_a_pickup_where_the_table_says(tmp_path: Path) -> None:
+    example = entry("loose-joint-pickup")
+    loads = [kw(p) for p in example["inputs"]["load_kw"]]
+    for pickup, ohm, shift, watts in example["expected"]["rows"]:
+        row = star(tmp_path, loads, "source", ohm)
+        # The printed ohms are rounded to 0.005, which moves the volts by less than 0.03.
+        assert max(row.boards["B"].l_n_v) == pytest.approx(pickup, abs=0.03)
+        assert row.boards["B"].v0_v == pytest.approx(shift, abs=0.03)
+        assert row.joint_w == pytest.approx(watts, abs=0.3)
+
+
+def test_an_earth_path_is_no_substitute_for_a_neutral(tmp_path: Path) -> None:
+    example = entry("earth-path-100-60-40")
+    loads = [f'current_a = {a}\npf = 1\nkind = "constant impedance"' for a in example["inputs"]["load_a"]]
+    for ohm, shift, high in example["expected"]["rows"]:
+        row = star(tmp_path, loads, "source", ohm)
+        assert row.boards["B"].v0_v == pytest.approx(shift, abs=0.006)
+        assert max(row.boards["B"].l_n_v) == pytest.approx(high, abs=0.06)
+
+
+@pytest.mark.parametrize("name", ["conductance-230", "conductance-120", "conductance-277"])
+def test_volts_follow_the_ratio_of_the_conductances(name: str, tmp_path: Path) -> None:
+    example = entry(name)
+    for *ratio, l1, l2, l3, shift, _ in example["expected"]["rows"]:
+        loads = [f"ohm = [{20 / g!r}, 0.0]" if g else "" for g in ratio]
+        row = star(tmp_path, loads, "source", star_v=example["inputs"]["source_l_n_v"])
+        assert row.boards["B"].l_n_v == pytest.approx([l1, l2, l3], abs=0.006)
+        assert row.boards["B"].v0_v == pytest.approx(shift, abs=0.006)
+
+
+def test_a_broken_pen_of_one_house_gives_the_touch_voltages_of_the_table(tmp_path: Path) -> None:
+    for power, ohm, stiff, ten in entry("touch-single-phase")["expected"]["rows"]:
+        for source_ohm, volts in ((1e-6, stiff), (10.0, ten)):
+            row = star(tmp_path, [kw(power), "", ""], "B", electrodes=(ohm, source_ohm))
+            assert row.boards["B"].pe_earth_v == pytest.approx(volts, abs=0.51)
+
+
+@pytest.mark.parametrize("name", ["neighbours-one-phase", "neighbours-spread"])
+def test_more_electrodes_lower_touch_voltage_and_not_the_overvoltage(name: str, tmp_path: Path) -> None:
+    example = entry(name)
+    inputs = example["inputs"]
+    for houses, touch, shift, *volts in example["expected"]["rows"]:
+        loads = [kw(p * houses / 3) for p in inputs["kw_of_three_houses"]]
+        electrodes = (inputs["electrode_each_ohm"] / houses, inputs["source_electrode_ohm"])
+        board = star(tmp_path, loads, "B", electrodes=electrodes).boards["B"]
+        assert board.pe_earth_v == pytest.approx(touch, abs=0.51)
+        assert board.v0_v == pytest.approx(shift, abs=0.51)
+        assert board.l_n_v == pytest.approx(volts, abs=0.51)
+
+
+def test_the_european_feeder_at_three_snapshots(tmp_path: Path) -> None:
+    # kW sums of the IEEE European low-voltage test feeder, an open data set; the volts are own arithmetic.
+    example = entry("european-feeder-whole")
+    powers = example["inputs"]["phase_kw"]
+    for phase_kw, (shift, _, *volts, amperes) in zip(powers, example["expected"]["rows"], strict=True):
+        loads = [kw(p, example["inputs"]["load_pf"]) for p in phase_kw]
+        board = star(tmp_path, loads, "source").boards["B"]
+        assert board.v0_v == pytest.approx(shift, abs=0.006)
+        assert board.l_n_v == pytest.approx(volts, abs=0.06)
+        assert star(tmp_path, loads, "none").boards["B"].neutral_a == pytest.approx(amperes, abs=0.06)
+
+
+@pytest.mark.parametrize("name", ["w6-two-phases-4-2", "w6-two-phases-6-2", "w6-two-phases-equal"])
+def test_two_phases_in_series_share_the_line_voltage(name: str, tmp_path: Path) -> None:
+    example = entry(name)
+    loads = [f"ohm = {ohm}" if ohm else "" for ohm in example["inputs"]["load_ohm"]]
+    board = star(tmp_path, loads, "source", star_v=float(example["inputs"]["source_l_l_v"] / np.sqrt(3))).boards["B"]
+    assert board.l_n_v[:2] == pytest.approx(example["expected"]["loaded_v"], abs=example["tolerance"]["v"])
