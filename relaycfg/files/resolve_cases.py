@@ -22,7 +22,7 @@ def resolve_faults(draft: Draft, boards: tuple[Board, ...], supply: Supply, ledg
         ohm = complex(*form.circuit_ohm)
         ledger.given(f"fault.{number}.circuit_ohm", ohm, "ohm", note=f"behind {form.board}")
         ledger.given(f"fault.{number}.clearing_s", form.clearing_s, "s", note=f"behind {form.board}")
-        faults.append(Fault(form.board, ohm, form.clearing_s, False, "site"))
+        faults.append(Fault(form.board, ohm, form.clearing_s, False, "site", "user"))
     if draft.faults:
         return tuple(faults)
     tables = ledger.tables
@@ -32,7 +32,7 @@ def resolve_faults(draft: Draft, boards: tuple[Board, ...], supply: Supply, ledg
         at = f"fault.final circuit of {board.name}."
         ledger.default(at + "clearing_s", seconds, "s", row.source, row.status)
         ledger.default(at + "circuit_ohm", complex(*circuit.value), "ohm", circuit.source, circuit.status)
-        faults.append(Fault(board.name, complex(*circuit.value), seconds, True, row.source))
+        faults.append(Fault(board.name, complex(*circuit.value), seconds, True, row.source, row.status))
     row = tables.row("disconnection-distribution")
     bolted = complex(*tables.row("default-fault-at-board").value)
     seconds = row.values["tt_s" if supply.earthing == "TT" else "tn_s"]
@@ -40,7 +40,7 @@ def resolve_faults(draft: Draft, boards: tuple[Board, ...], supply: Supply, ledg
         if board.cable is not None and board.fed_from != SOURCE:
             at = f"fault.cable to {board.name}.clearing_s"
             ledger.default(at, seconds, "s", f"bolted at the board; {row.source}", row.status)
-            faults.append(Fault(board.name, bolted, seconds, True, row.source))
+            faults.append(Fault(board.name, bolted, seconds, True, row.source, row.status))
     return tuple(faults)
 
 
@@ -72,8 +72,9 @@ def resolve_reference(form: MustHoldForm, frequency_hz: float, ledger: Ledger) -
         if name == "public supply":
             swells = reference_swells(tables)
     interruption = ledger.pick("must_hold.interruption_s", form.interruption_s, "default-interruption", "s")
-    source = "site" if form.interruption_s is not None else tables.row("default-interruption").source
-    return ReferenceCases(tuple(dips.values()), swells, float(interruption), source)
+    row = tables.row("default-interruption")
+    source, status = (row.source, row.status) if form.interruption_s is None else ("site", "user")
+    return ReferenceCases(tuple(dips.values()), swells, float(interruption), source, status)
 
 
 def reference_swells(tables: Tables) -> tuple[tuple[float, float, str, str], ...]:

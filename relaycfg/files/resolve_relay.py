@@ -37,7 +37,7 @@ def resolve_relay(form: RelayForm, device: DeviceForm, ledger: Ledger) -> Relay:
 def _feed(form: FeedForm, at: str, ledger: Ledger) -> Feed:
     between = ledger.pick(at + "from", form.from_, "default-relay-feed")
     if form.range_v is None:
-        return Feed(between, 0.0, 0.0)
+        return Feed(between, None, None)
     ledger.given(at + "range_v", form.range_v, "V")
     return Feed(between, form.range_v[0], form.range_v[1])
 

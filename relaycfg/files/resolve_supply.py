@@ -71,7 +71,7 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
     emf = form.no_load_v if form.no_load_v is not None else supply.nominal_v
     solve = {"transformer": _transformer, "generator": _generator, "impedance": _plain}[form.kind]
     line, neutral = solve(form, emf * supply.geometry.line_to_line_ratio, at, ledger)
-    steps = (0.0, 0.0, 0.0, "")
+    steps = (0.0, 0.0, 0.0, "", "")
     if form.kind == "generator":
         steps = _steps(form, at, ledger)
     return Source(
@@ -87,6 +87,7 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
         step_rise_percent=steps[1],
         step_recovery_s=steps[2],
         step_source=steps[3],
+        step_status=steps[4],
     )
 
 
@@ -170,8 +171,8 @@ def _neutral(form: SourceForm, at: str, ledger: Ledger) -> complex:
     return complex(*form.neutral_ohm)
 
 
-def _steps(form: SourceForm, at: str, ledger: Ledger) -> tuple[float, float, float, str]:
-    """Dip, rise [%] and recovery [s] of a generating set on load steps, with their source."""
+def _steps(form: SourceForm, at: str, ledger: Ledger) -> tuple[float, float, float, str, str]:
+    """Dip, rise [%] and recovery [s] of a generating set on load steps, with their source and its status."""
     usual = ledger.tables.row("default-generator-class").value
     choice = f"generating set class {form.class_}" if form.class_ else usual
     row = ledger.tables.named("generator", choice)
@@ -181,4 +182,4 @@ def _steps(form: SourceForm, at: str, ledger: Ledger) -> tuple[float, float, flo
     else:
         ledger.default(at + "class", row.name, "", row.source, row.status)
     values = row.values
-    return values["dip_percent"], values["rise_percent"], values["recovery_s"], row.source
+    return values["dip_percent"], values["rise_percent"], values["recovery_s"], row.source, row.status

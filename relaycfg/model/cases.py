@@ -45,3 +45,7 @@ class Case:
     courses: tuple[Course, ...]
     figures: str
     """The course in words with its main figures, as printed in the table of cases."""
+    begins_s: float = 0.0
+    """When the case itself begins within its courses; before that the system is dead."""
+    deadline_s: float = float("inf")
+    """A case that must trip: the switch has to be open by then, counted from ``begins_s``."""

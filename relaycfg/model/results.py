@@ -84,7 +84,7 @@ class Share:
 
 @dataclass(frozen=True)
 class WorstState:
-    """A state an engineer can re-enter: seed index and what it does."""
+    """A sampled state by its number (``breaks --state "sample 17"`` shows it again), and what it does."""
 
     index: int
     board: str
@@ -189,9 +189,18 @@ class StageResult:
     secure: bool
     bounds: tuple[Bound, ...]
     margins: Margins | None
-    adds: Share | None
-    """Harmful states that this stage clears in time on its own."""
+    clears_percent: float | None
+    """Share of the harmful scenarios (place x state x level x load model) that it clears in time on its own."""
     reason: str
+
+
+@dataclass(frozen=True)
+class Operated:
+    """A stage that operated in a case: its label, seconds from the start of the case, and in which course."""
+
+    stage: str
+    seconds: float
+    course: str
 
 
 @dataclass(frozen=True)
@@ -206,15 +215,16 @@ class CaseResult:
     figures: str
     source: str
     status: str
-    operated: tuple[str, ...]
-    """Stages that tripped, with the time, such as "27 stage 1 at 0.53 s (dip on L2)"."""
+    operated: tuple[Operated, ...]
+    """Stages that operated, the fastest first."""
     highest_l_n_v: float
     lowest_l_n_v: float
     highest_v0_v: float
     margin_v: float | None
     margin_s: float | None
-    nearest: str
-    """Stage nearest to operating and the course it is for."""
+    nearest_v: str
+    nearest_s: str
+    """Labels of the stages whose margins these are."""
 
 
 @dataclass(frozen=True)
@@ -224,6 +234,8 @@ class CurveStep:
     pickup: float
     seconds: float | None
     behind: str
+    case: int | None = None
+    """Number of the case behind it, where it is one."""
 
 
 @dataclass(frozen=True)
@@ -244,11 +256,11 @@ class Corridor:
 
 @dataclass(frozen=True)
 class ClosedGroup:
-    """Harmful break states that no secure setting clears, grouped by what blocks them."""
+    """Harmful scenarios that no secure setting clears, grouped by what blocks them."""
 
     blockers: dict[str, str]
     """Element to the case (or limit) that blocks it."""
-    states: int
+    scenarios: int
     core: bool
     place: str
     worst_l_n_v: float
@@ -289,14 +301,33 @@ class TestPoint:
 
 @dataclass(frozen=True)
 class WorkedBreak:
-    """One break worked by hand: three admittances, the displacement and three volts."""
+    """One break worked by hand: a line's admittances, the displacement and the volts; cables are left out.
+
+    ``state`` is the load state, every load taken as the constant impedance of its rating; ``path_s`` the admittance
+    of the way back through electrodes (0 where there is none).
+    """
 
     place: str
+    state: str
     admittance_s: tuple[complex, ...]
+    path_s: complex
     emf_v: float
     shift_v: complex
     l_n_v: tuple[float, ...]
     solver_l_n_v: tuple[float, ...]
+
+
+@dataclass(frozen=True)
+class Cover:
+    """What a set of elements does at nominal supply over the places the relay sees, both load models agreeing.
+
+    ``cleared_percent`` of the harmful states are cleared in time (None: none is harmful); in ``seen_percent`` of all
+    states some stage operates.
+    """
+
+    elements: str
+    cleared_percent: float | None
+    seen_percent: float
 
 
 @dataclass(frozen=True)
@@ -323,7 +354,10 @@ class Study:
     breaks: BreakStudy
     corridors: tuple[Corridor, ...]
     closed: tuple[ClosedGroup, ...]
-    never_cleared: int
+    uncleared: int
+    """Harmful scenarios that these settings do not clear in time."""
+    blocked: int
+    """Those of them that no secure setting clears; the others were given up for security margin, or are not set."""
     findings: tuple[Finding, ...]
     tests: tuple[TestPoint, ...]
     worked: WorkedBreak | None
@@ -333,8 +367,7 @@ class Study:
     """Auxiliary feeds taken from the system: what, lowest and highest volts over the break states."""
     smallest_asymmetry: dict[str, float | None]
     """Element set to the smallest load ratio k in k:1:1 that it sees behind a stiff source, None where never."""
-    coverage: dict[str, Share]
-    """Share of harmful states cleared in time by "59", "27", "59 + 27", "all", and "seen by 59N"."""
+    coverage: tuple[Cover, ...]
     input_digest: str
 
     @property

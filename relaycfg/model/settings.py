@@ -1,5 +1,6 @@
 """Settings of one relay: what derive writes and check reads."""
 
+import hashlib
 from dataclasses import dataclass
 from typing import Literal
 
@@ -48,6 +49,14 @@ class Settings:
     def of(self, function: Function) -> tuple[Stage, ...]:
         """Stages of one element in order of their number."""
         return tuple(sorted((s for s in self.stages if s.function is function), key=lambda s: s.number))
+
+    @property
+    def digest(self) -> str:
+        """sha256 of everything set, so that two sheets of one site with different settings can be told apart."""
+        rows = repr(
+            (self.for_relay, self.device, self.stages, self.inhibit_s, self.after_any_trip, self.reconnect_delay_s)
+        )
+        return f"sha256:{hashlib.sha256(rows.encode()).hexdigest()}"
 
     @property
     def active(self) -> tuple[Stage, ...]:

@@ -90,6 +90,7 @@ class Source:
     step_rise_percent: float = 0.0
     step_recovery_s: float = 0.0
     step_source: str = ""
+    step_status: str = ""
 
 
 @dataclass(frozen=True)
@@ -172,15 +173,19 @@ class Fault:
     clearing_s: float
     assumed: bool
     source: str
+    status: str
 
 
 @dataclass(frozen=True)
 class Feed:
-    """What an auxiliary circuit lives on: ``auxiliary``, a line-to-neutral or a line-to-line pair."""
+    """What an auxiliary circuit lives on: ``auxiliary``, a line-to-neutral or a line-to-line pair.
+
+    The range is None where it is not stated.
+    """
 
     between: str
-    low_v: float
-    high_v: float
+    low_v: float | None
+    high_v: float | None
 
 
 @dataclass(frozen=True)
@@ -247,6 +252,7 @@ class ReferenceCases:
     """Percent of nominal and duration."""
     interruption_s: float
     interruption_source: str
+    interruption_status: str
 
 
 @dataclass(frozen=True)

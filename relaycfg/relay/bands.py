@@ -47,6 +47,19 @@ def pickups_least_sensitive(element: Element, pickups: FloatArray) -> FloatArray
     return _severity(element, pickups) + element.accuracy.pickup_error(pickups)
 
 
+def pickup_at_most_sensitive(element: Element, severity: float) -> float:
+    """The pickup as set (volts or points) whose most sensitive end is ``severity``; inverse of the above."""
+    share, fixed = element.accuracy.pickup_percent / 100, element.accuracy.pickup_abs
+    if element.function is Function.UNDERVOLTAGE:
+        volts = -severity
+        if element.accuracy.combine == "sum":
+            return (volts - fixed) / (1 + share)
+        return min(volts / (1 + share), volts - fixed)
+    if element.accuracy.combine == "sum":
+        return (severity + fixed) / (1 - share)
+    return max(severity / (1 - share), severity + fixed)
+
+
 def shortest_delay(element: Element, delay_s: FloatArray) -> FloatArray:
     """Set delays [s] less their timing error, not below zero."""
     return np.maximum(delay_s - element.accuracy.time_error(delay_s), 0.0)

@@ -5,6 +5,7 @@ import numpy as np
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import ComplexArray
 from relaycfg.model.results import WorkedBreak
+from relaycfg.model.site import Load, Motor, Site
 from relaycfg.network import connected
 from relaycfg.relay import severities
 from relaycfg.study.evidence import Evidence
@@ -55,30 +56,41 @@ def _open_star(evidence: Evidence, ratios: np.ndarray) -> ComplexArray:
 
 
 def worked_break(evidence: Evidence) -> WorkedBreak | None:
-    """The break nearest to the relay with every load connected, by Millman's theorem, beside the solver's volts."""
+    """The break nearest to the relay with every load connected, by Millman's theorem, beside the solver's volts.
+
+    Cables and source are left out, which is the difference to the solver. None where nothing ties the neutral.
+    """
     site, network = evidence.site, evidence.network
     place = seen_places(site, evidence.relay)[-1]
     geometry = site.supply.geometry
     behind = site.behind(place)
     admittance = np.zeros(len(geometry.names), complex)
-    for load in site.loads:
-        if load.board in behind and load.to_neutral:
-            each = complex(load.p_w, -load.q_var) / len(load.lines) / site.supply.nominal_v**2
-            admittance[list(load.lines)] += each
-    for motor in site.motors:
-        if motor.board in behind and motor.to_neutral:
-            admittance[list(motor.lines)] += motor.running_va.conjugate() / len(motor.lines) / site.supply.nominal_v**2
-    if abs(admittance.sum()) == 0:
+    items: tuple[Load | Motor, ...] = (*site.loads, *site.motors)
+    for item in items:
+        if item.board in behind and item.to_neutral:
+            power = item.running_va if isinstance(item, Motor) else complex(item.p_w, item.q_var)
+            admittance[list(item.lines)] += power.conjugate() / len(item.lines) / site.supply.nominal_v**2
+    path = _electrode_path_s(site, behind)
+    if abs(admittance.sum() + path) == 0:
         return None
     emf = evidence.levels.nominal
-    shift = complex((emf * admittance).sum() / admittance.sum())
+    shift = complex((emf * admittance).sum() / (admittance.sum() + path))
     solved = network.solve(place, connected(site), emf, all_impedance=True)
-    at = network.boards.index(behind[0] if behind else evidence.relay.measures_at)
     return WorkedBreak(
         place,
+        "connected",
         tuple(complex(y) for y in admittance),
+        complex(path),
         float(abs(emf[0])),
         shift,
         tuple(float(v) for v in np.abs(emf - shift)),
-        tuple(float(v) for v in np.abs(solved.l_n[at, :, 0])),
+        tuple(float(v) for v in np.abs(solved.l_n[network.boards.index(behind[0]), :, 0])),
     )
+
+
+def _electrode_path_s(site: Site, behind: tuple[str, ...]) -> float:
+    """Admittance of the way back through electrodes tied to N behind the break, and the source's electrode."""
+    tied = [b.electrode_ohm for b in map(site.board, behind) if b.neutral_earth_link and b.electrode_ohm]
+    if not tied or site.source.electrode_ohm is None:
+        return 0.0
+    return 1 / (site.source.electrode_ohm + 1 / sum(1 / ohm for ohm in tied))

@@ -29,6 +29,7 @@ def not_cleared(
         mine = [(s, m) for s, m in zip(evidence.scenarios, left, strict=True) if s.place == place]
         core = sum(int((m & s.core).sum()) for s, m in mine)
         wanted = sum(int((s.harmful & s.core & s.resolved).sum()) for s, _ in mine)
+        harmful = sum(int((s.harmful & s.resolved).sum()) for s, _ in mine)
         zone = sum(int((m & ~s.core).sum()) for s, m in mine)
         lost = sum(int((~s.resolved).sum()) for s, _ in mine)
         if core:
@@ -53,9 +54,9 @@ def not_cleared(
                 Finding(
                     "warning",
                     f"break at {place}",
-                    f"break at {place}: {zone} scenarios between the sustained voltage and the first point of the "
-                    "withstand curve are not cleared in time",
-                    "see the shares by place",
+                    f"break at {place}: {zone} of {harmful - wanted} scenarios between the sustained voltage and the "
+                    "first point of the withstand curve are not cleared in time",
+                    "accept it in writing, or look at what blocks them",
                     "equipment may age or trip by itself",
                 )
             )
@@ -64,13 +65,17 @@ def not_cleared(
                 Finding(
                     "exception",
                     f"break at {place}",
-                    f"break at {place}: {lost} scenarios have no solution the program could find; they count as not "
-                    "cleared",
+                    f"break at {place}: {_scenarios(lost)} without a solution the program could find; they count as "
+                    "not cleared",
                     "check the load kinds of the loads that are on in these states",
                     "nothing is known of these states",
                 )
             )
     return found
+
+
+def _scenarios(count: int) -> str:
+    return "1 scenario" if count == 1 else f"{count} scenarios"
 
 
 def _worst_left(mine: list[tuple[Scenarios, BoolArray]]) -> tuple[float, float]:
@@ -155,10 +160,21 @@ def floating_feeds(feeds: tuple[FeedRange, ...]) -> list[Finding]:
     """Supplies and coils that the lost neutral takes out of their working range."""
     found = []
     for feed in feeds:
+        if feed.allowed is None:
+            found.append(
+                Finding(
+                    "warning",
+                    feed.what,
+                    f"{feed.what} is fed {feed.between} and its range is not stated: {feed.lowest_v:.0f} to "
+                    f"{feed.highest_v:.0f} V over the break states",
+                    "state range_v, or feed it from an auxiliary source",
+                    "nobody knows whether it works while the neutral is lost",
+                )
+            )
+        if feed.allowed is None or feed.failing == 0:
+            continue
         low, high = feed.allowed
         percent = 100 * feed.failing / feed.harmful if feed.harmful else 0.0
-        if feed.failing == 0:
-            continue
         found.append(
             Finding(
                 "exception",

@@ -4,7 +4,7 @@ import numpy as np
 
 from relaycfg.model.results import BreakRow, BreakStudy, PlaceSummary
 from relaycfg.model.site import NONE, Site
-from relaycfg.network import Network, connected, corners, join, least, sampled
+from relaycfg.network import LoadStates, Network, connected, corners, join, least, sampled
 from relaycfg.study.break_rows import break_rows
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.levels import NOMINAL, supply_levels
@@ -12,6 +12,7 @@ from relaycfg.study.place_summary import BALANCED_PU, summarise, why_not_seen
 from relaycfg.study.scenarios import Scenarios
 from relaycfg.study.stages import ActiveStage
 
+SAMPLE = "sample"
 SINGLE_STATES = {"connected": connected, "least": least, "corners": corners}
 
 
@@ -27,18 +28,18 @@ def breaks(
     """Break rows and place summaries without settings.
 
     ``at`` keeps one place (``none``: the sound network), ``joint_ohm`` puts a joint instead of an open break,
-    ``state`` keeps one kind of load states (``sample``: no rows, only the summaries).
+    ``state`` keeps one kind of load states (``sample``: no rows, only the summaries), or shows one sampled state
+    again by its name, such as ``sample 17``. Raises ValueError for another name.
     """
     network = Network(site)
     emf = supply_levels(site, network).nominal
     places = (NONE, *site.places) if at is None else (at,)
-    kinds = [k for k in SINGLE_STATES if state in (None, k)]
+    states = _rows_of(site, seed, state)
     rows: tuple[BreakRow, ...] = ()
-    if kinds:
-        states = join(*(SINGLE_STATES[k](site) for k in kinds))
+    if states is not None:
         rows = tuple(row for place in places for row in break_rows(site, network, place, states, emf, joint_ohm))
     summaries: tuple[PlaceSummary, ...] = ()
-    if state in (None, "sample"):
+    if state in (None, SAMPLE):
         drawn = sampled(site, samples, seed)
         summaries = tuple(
             summarise(site, network, place, network.solve(place, drawn, emf, joint_ohm), drawn, None, None, ())
@@ -47,6 +48,15 @@ def breaks(
         )
     seen = sum(not why_not_seen(site, site.relay, place) for place in site.places)
     return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows))
+
+
+def _rows_of(site: Site, seed: int, state: str | None) -> LoadStates | None:
+    """The load states to show one by one."""
+    if state == SAMPLE:
+        return None
+    if state is not None and state.startswith(f"{SAMPLE} "):
+        return sampled(site, 1, seed, start=int(state.removeprefix(f"{SAMPLE} ")))
+    return join(*(SINGLE_STATES[k](site) for k in SINGLE_STATES if state in (None, k)))
 
 
 def break_study(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> BreakStudy:

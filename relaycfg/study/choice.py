@@ -1,6 +1,6 @@
 """Choice of stages: greatest cover of what must be cleared, then fewest stages, then security margin, then speed."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import combinations
 
 import numpy as np
@@ -8,12 +8,16 @@ from numpy.typing import NDArray
 
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
-from relaycfg.study.ladder import Ladder
+from relaycfg.study.ladder import UNIT_TIME, Ladder
 from relaycfg.study.scenarios import Scenarios
 
 MARGIN_CAP_UNITS = 2.0
+"""A public supply shows a knee here: beyond it cover falls and nothing is gained (own choice)."""
 MARGINS = tuple(float(units) for units in np.arange(MARGIN_CAP_UNITS, -0.25, -0.25))
+KEPT_TIME = (1.0, 0.5, 0.0)
+"""Units of time kept towards the deadlines of the needed core, tried in this order (own choice)."""
 COVER_KEPT = 0.98
+"""Share of an element's greatest cover that is kept while stages are saved and margins raised (own choice)."""
 
 
 @dataclass(frozen=True)
@@ -115,11 +119,14 @@ def raise_margins(
     return tuple(sorted(moved, key=lambda r: r.pickup))
 
 
-def detection_rung(ladder: Ladder) -> Rung | None:
-    """The lowest pickup that is secure with the full margin, at its shortest secure delay; None where none is."""
+def detection_rung(ladder: Ladder, floor: float) -> Rung | None:
+    """The lowest pickup beyond ``floor`` that is secure with the full margin, at its shortest secure delay.
+
+    None where none is secure. ``floor`` is a severity that may stand without being among the cases.
+    """
     for units in MARGINS:
         fastest = ladder.fastest(units)
-        rung = _first(fastest < len(ladder.delays))
+        rung = _first((fastest < len(ladder.delays)) & (ladder.sensitive > floor))
         if rung < len(fastest):
             return Rung(rung, int(fastest[rung]), units)
     return None
@@ -158,17 +165,23 @@ def _reaches(score: tuple[int, int], goal: tuple[int, int]) -> bool:
 def _with_margin(
     ladder: Ladder, own: Demand, need: Demand, rungs: list[Rung], position: int, goal: tuple[int, int]
 ) -> Rung:
+    """One stage at the greatest margin; what is kept in time towards the deadlines of the needed core goes first.
+
+    A security margin bought with all of the time left would leave a core state one step from being missed.
+    """
     others = [(r.pickup, float(ladder.clearing[r.delay])) for k, r in enumerate(rungs) if k != position]
-    for units in MARGINS:
-        if units < rungs[position].margin_units:
-            break
-        fastest = ladder.fastest(units)
-        clearing = ladder.clearing[fastest]
-        kept = (_cover_of_each(need, others, clearing) >= goal[0]) & (fastest < len(ladder.delays))
-        kept &= _cover_of_each(own, others, clearing) >= COVER_KEPT * goal[1]
-        if kept.any():
-            quickest = int(fastest[kept].min())
-            return Rung(_first(kept & (fastest == quickest)), quickest, units)
+    for kept_units in KEPT_TIME:
+        hard = replace(need, deadlines=need.deadlines / UNIT_TIME**kept_units)
+        for units in MARGINS:
+            if units < max(kept_units, rungs[position].margin_units):
+                break
+            fastest = ladder.fastest(units)
+            clearing = ladder.clearing[fastest]
+            kept = (_cover_of_each(hard, others, clearing) >= goal[0]) & (fastest < len(ladder.delays))
+            kept &= _cover_of_each(own, others, clearing) >= COVER_KEPT * goal[1]
+            if kept.any():
+                quickest = int(fastest[kept].min())
+                return Rung(_first(kept & (fastest == quickest)), quickest, units)
     return rungs[position]
 
 

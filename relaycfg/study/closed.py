@@ -25,12 +25,13 @@ class _Blocking:
     severity: FloatArray
 
 
-def closed_groups(evidence: Evidence, wanted: tuple[BoolArray, ...]) -> tuple[ClosedGroup, ...]:
-    """Groups of the states of ``wanted`` that no secure setting of any element clears, core first, then the largest.
+def blocked(evidence: Evidence, wanted: tuple[BoolArray, ...]) -> tuple[BoolArray, ...]:
+    """The states of ``wanted`` that no secure setting of any element clears."""
+    return tuple(w & ~_clearable(evidence, s) for w, s in zip(wanted, evidence.scenarios, strict=True))
 
-    States are grouped by place, core and the case that blocks each element.
-    """
-    left = tuple(w & ~_clearable(evidence, s) for w, s in zip(wanted, evidence.scenarios, strict=True))
+
+def closed_groups(evidence: Evidence, left: tuple[BoolArray, ...]) -> tuple[ClosedGroup, ...]:
+    """Groups of ``blocked`` states by place, core and the case that blocks each element; core first, then largest."""
     tallies: dict[tuple[str, bool, tuple[str, ...]], list[tuple[int, float, float, float]]] = {}
     for scenario, mask in zip(evidence.scenarios, left, strict=True):
         if not mask.any():
@@ -54,7 +55,7 @@ def closed_groups(evidence: Evidence, wanted: tuple[BoolArray, ...]) -> tuple[Cl
             worst = float(scenario.highest_v[mask][mine].max())
             tallies.setdefault(key, []).append((int(mine.sum()), worst, seconds, volts))
     groups = [_group(evidence, key, rows) for key, rows in tallies.items()]
-    return tuple(sorted(groups, key=lambda g: (not g.core, -g.states))[:MOST_GROUPS])
+    return tuple(sorted(groups, key=lambda g: (not g.core, -g.scenarios))[:MOST_GROUPS])
 
 
 def _clearable(evidence: Evidence, scenario: Scenarios) -> BoolArray:
@@ -93,7 +94,7 @@ def _blocker(ladder: Ladder, code: int) -> str:
         return ladder.runs.standing_name
     if code == NOTHING:
         return "its own shortest time"
-    return next(n.split(" (")[0] for n, c in zip(ladder.runs.names, ladder.runs.cases, strict=True) if c == code)
+    return ladder.runs.case_names[code]
 
 
 def _group(

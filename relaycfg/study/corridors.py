@@ -74,11 +74,10 @@ def _dots(ladder: Ladder, sign: float) -> tuple[CurveStep, ...]:
     seconds = np.diagonal(run_lengths(runs, peak, peak * ladder.dropout_ratio))
     dots: dict[int, CurveStep] = {}
     for k, number in enumerate(runs.cases):
-        name = runs.names[k].split(" (")[0]
         best = dots.get(number)
         if peak[k] <= runs.standing:
             continue
         if best is None or peak[k] > sign * best.pickup:
             stays = float(seconds[k]) if np.isfinite(seconds[k]) else None
-            dots[number] = CurveStep(sign * float(peak[k]), stays, name)
+            dots[number] = CurveStep(sign * float(peak[k]), stays, runs.case_names[number], number)
     return tuple(dots.values())

@@ -38,14 +38,13 @@ def gather(site: Site, relay: Relay, samples: int, seed: int) -> Evidence:
     states = sampled(site, samples, seed)
     healthy = healthy_taps(site, network, levels, states, relay.measures_at)
     cases = must_hold_cases(site, network, levels, healthy, relay.measures_at)
-    ladders = {e.function: ladder_of(site, relay, cases, e) for e in relay.device.elements}
+    ladders = {e.function: _ladder(site, relay, cases, e) for e in relay.device.elements}
     solved = {place: network.solve(place, states, levels.nominal) for place in site.places}
     scenarios = all_scenarios(site, relay, network, levels, states, solved)
     return Evidence(site, relay, network, levels, states, cases, ladders, solved, scenarios, seed, samples)
 
 
-def ladder_of(site: Site, relay: Relay, cases: tuple[Case, ...], element: Element) -> Ladder:
-    """The ladder of one element, or of one counted differently by a setting (V0 against 3V0, a definition)."""
+def _ladder(site: Site, relay: Relay, cases: tuple[Case, ...], element: Element) -> Ladder:
     supply = site.supply
     return Ladder(
         element,

@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from relaycfg.model.geometry import FloatArray
+from relaycfg.model.geometry import BoolArray, FloatArray
 from relaycfg.model.site import Feed
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.scenarios import Scenarios
@@ -18,7 +18,8 @@ class FeedRange:
     between: str
     lowest_v: float
     highest_v: float
-    allowed: tuple[float, float]
+    allowed: tuple[float, float] | None
+    """None where the range is not stated: nothing can be judged."""
     harmful: int
     failing: int
 
@@ -37,8 +38,27 @@ def _range(evidence: Evidence, what: str, feed: Feed) -> FeedRange:
         harm = scenario.harmful[scenario.resolved]
         lowest, highest = min(lowest, float(volts.min(initial=np.inf))), max(highest, float(volts.max(initial=0.0)))
         harmful += int(harm.sum())
-        failing += int((harm & ((volts < feed.low_v) | (volts > feed.high_v))).sum())
-    return FeedRange(what, feed.between, lowest, highest, (feed.low_v, feed.high_v), harmful, failing)
+        failing += int((harm & _outside(volts, feed)).sum())
+    stated = None if feed.low_v is None or feed.high_v is None else (feed.low_v, feed.high_v)
+    return FeedRange(what, feed.between, lowest, highest, stated, harmful, failing)
+
+
+def fed(evidence: Evidence, scenario: Scenarios) -> BoolArray:
+    """States [states] in which relay and trip coil have the volts they need (an undervoltage release needs none)."""
+    relay = evidence.relay
+    feeds = [relay.supply, *([] if relay.trip_coil_kind == "undervoltage release" else [relay.trip_coil])]
+    working = np.ones(scenario.deadline_s.shape, bool)
+    for feed in feeds:
+        if feed.between != "auxiliary":
+            working &= ~_outside(_volts(evidence, scenario, feed), feed)
+    return working
+
+
+def _outside(volts: FloatArray, feed: Feed) -> BoolArray:
+    low = -np.inf if feed.low_v is None else feed.low_v
+    high = np.inf if feed.high_v is None else feed.high_v
+    outside: BoolArray = (volts < low) | (volts > high)
+    return outside
 
 
 def _volts(evidence: Evidence, scenario: Scenarios, feed: Feed) -> FloatArray:

@@ -1,13 +1,15 @@
 """How far each stage is from failing a must-hold case, and from missing a state that depends on it."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
+from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
+from relaycfg.relay import pickup_at_most_sensitive
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.ladder import UNIT_TIME
-from relaycfg.study.ride_through import STANDING, behind_name, ride_through, run_lengths
+from relaycfg.study.ride_through import STANDING, Runs, behind_name, ride_through, run_lengths
 from relaycfg.study.stages import ActiveStage, clears
 
 MOST_UNITS = 20.0
@@ -20,15 +22,17 @@ SAME = 1e-6
 class Security:
     """Distance of one stage to its nearest failing must-hold case, None where no case limits.
 
-    ``volts`` by which the pickup may move towards normal volts at the same delay (negative: by how much it is too
-    sensitive), ``seconds`` by which the delay may shrink at the same pickup. ``by_case`` holds (volts, seconds) a
-    case number.
+    ``volts``: by how much the pickup, as set, may move towards normal volts at the same delay (negative: by how much
+    it is too sensitive). ``seconds``: by how much the delay may shrink at the same pickup (None also where a case
+    never resets). ``limit`` is the severity [V or points] that the most sensitive end must stay beyond. ``by_case``
+    holds each passing case's own volts and seconds.
     """
 
     secure: bool
     volts: float | None
     seconds: float | None
     units: float | None
+    limit: float | None
     volts_case: str
     seconds_case: str
     by_case: dict[int, tuple[float | None, float | None]]
@@ -36,59 +40,73 @@ class Security:
 
 def security(active: ActiveStage) -> Security:
     """Security of a stage at its most sensitive, against every hold case."""
-    runs, band, ratio = active.ladder.runs, active.sensitive, active.stage.dropout_ratio
-    hold_s = active.stage.hold_s if active.stage.reset == "held" else 0.0
-    here = run_lengths(runs, np.array([band.pickup]), np.array([band.dropout]), hold_s)[:, 0]
-    shift = _failing_shift(active, hold_s)
+    runs, band = active.ladder.runs, active.sensitive
+    shift = _failing_shift(active, runs)
     worst = int(np.argmin(shift)) if len(shift) else STANDING
-    standing_shift = _standing_shift(active)
-    volts = min(float(shift[worst]) if worst != STANDING else np.inf, standing_shift)
-    volts_case = runs.standing_name if standing_shift <= volts else behind_name(runs, worst)
-    if abs(volts - (band.pickup - runs.standing / ratio)) < SAME and ratio != 1:
+    standing_shift = band.pickup - runs.standing
+    least = min(float(shift[worst]) if worst != STANDING else np.inf, standing_shift)
+    volts_case = runs.standing_name if standing_shift <= least else behind_name(runs, worst)
+    ratio = active.stage.dropout_ratio
+    if abs(least - (band.pickup - runs.standing / ratio)) < SAME and ratio != 1:
         # The course itself only starts it; what fails is that the standing value lies inside the drop-out.
         volts_case = f"{runs.standing_name}: it would not drop out again"
-    now = ride_through(runs, np.array([band.pickup]), np.array([band.pickup * ratio]), hold_s)
+    now = ride_through(runs, np.array([band.pickup]), np.array([band.dropout]), active.hold_s)
     reach = float(now.seconds[0])
-    seconds = band.delay_s - reach
-    by_case: dict[int, tuple[float | None, float | None]] = {}
-    for number in dict.fromkeys(runs.cases):
-        mine = np.array([c == number for c in runs.cases])
-        stays = float(here[mine].max())
-        by_case[number] = (_finite(float(shift[mine].min())), _finite(band.delay_s - stays) if stays > 0 else None)
+    found = bool(np.isfinite(least))
     return Security(
         band.delay_s > reach,
-        _finite(volts),
-        _finite(seconds),
-        _units(active, hold_s),
-        volts_case if np.isfinite(volts) else "no case limits it",
+        as_set(active, least) if found else None,
+        _finite(band.delay_s - reach),
+        _units(active),
+        band.pickup - least if found else None,
+        volts_case if found else "no case limits it",
         behind_name(runs, int(now.behind[0])),
-        by_case,
+        _by_case(active),
     )
 
 
-def _failing_shift(active: ActiveStage, hold_s: float) -> FloatArray:
-    """By how much the pickup may move towards normal volts before each course trips it [courses], inf: never.
+def as_set(active: ActiveStage, shift: float) -> float:
+    """A shift of the most sensitive end as a shift of the pickup as set, whose error band moves with it."""
+    stage, element = active.stage, active.ladder.element
+    limit = pickup_at_most_sensitive(element, active.sensitive.pickup - shift)
+    return limit - stage.pickup if stage.function is Function.UNDERVOLTAGE else stage.pickup - limit
+
+
+def _by_case(active: ActiveStage) -> dict[int, tuple[float | None, float | None]]:
+    """Each passing case on its own: what stands before and after it is another case's matter."""
+    runs, band = replace(active.ladder.runs, standing=-np.inf), active.sensitive
+    here = run_lengths(runs, np.array([band.pickup]), np.array([band.dropout]), active.hold_s)[:, 0]
+    shift = _failing_shift(active, runs)
+    found: dict[int, tuple[float | None, float | None]] = {}
+    for number in dict.fromkeys(runs.cases):
+        mine = np.array([c == number for c in runs.cases])
+        least, stays = float(shift[mine].min()), float(here[mine].max())
+        found[number] = (
+            as_set(active, least) if np.isfinite(least) else None,
+            band.delay_s - stays if stays > 0 else None,
+        )
+    return found
+
+
+def _failing_shift(active: ActiveStage, runs: Runs) -> FloatArray:
+    """By how much the most sensitive end may move towards normal volts before each course trips it, inf: never.
 
     Only severities of the course itself can change anything, so the shifts to try are exact: those that bring the
     pickup, or the drop-out, onto one of them.
     """
-    runs, band, ratio = active.ladder.runs, active.sensitive, active.stage.dropout_ratio
+    band, ratio = active.sensitive, active.stage.dropout_ratio
     levels = np.unique(np.append(runs.severity, runs.standing))
+    levels = levels[np.isfinite(levels)]
     shifts = np.unique(np.concatenate([band.pickup - levels, band.pickup - levels / ratio]))
     pickup = band.pickup - shifts - HAIR_V
-    fails = run_lengths(runs, pickup, pickup * ratio, hold_s) >= band.delay_s
+    fails = run_lengths(runs, pickup, pickup * ratio, active.hold_s) >= band.delay_s
     return np.where(fails.any(axis=1), shifts[np.argmax(fails, axis=1)], np.inf)
 
 
-def _standing_shift(active: ActiveStage) -> float:
-    """The shift at which the standing severity itself picks the stage up."""
-    return float(active.sensitive.pickup - active.ladder.runs.standing)
-
-
-def _units(active: ActiveStage, hold_s: float) -> float | None:
+def _units(active: ActiveStage) -> float | None:
     units = np.linspace(0, MOST_UNITS, UNIT_STEPS)
     pickup = active.sensitive.pickup - units * active.ladder.unit
-    reach = ride_through(active.ladder.runs, pickup, pickup * active.stage.dropout_ratio, hold_s).seconds
+    reach = ride_through(active.ladder.runs, pickup, pickup * active.stage.dropout_ratio, active.hold_s).seconds
     fails = active.sensitive.delay_s / UNIT_TIME**units <= reach
     if not fails.any():
         return None

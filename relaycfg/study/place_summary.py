@@ -54,7 +54,8 @@ def summarise(
 ) -> PlaceSummary:
     """One place at nominal supply; ``pair`` holds its scenarios as modelled and all constant impedance.
 
-    The class of a state is the worst over both load models: harmed if either is, operated only if both are.
+    The class of a state is the worst over both load models: harmed if either is, and cleared only if each model
+    that harms is; a state that neither harms has operated only if it has in both.
     """
     relay = site.relay
     # An unresolved state has no voltages to show; it is counted, and left out of every figure.
@@ -114,7 +115,8 @@ def _classes(
     for scenario in pair:
         operated = operating_s(stages, scenario, evidence)
         this = np.where(~np.isfinite(operated), 2, np.where(operated > scenario.deadline_s, 1, 0))
-        operation = np.maximum(operation, this)
+        # Where one model harms and the other does not, only the harmful one says whether the state is cleared.
+        operation = np.maximum(operation, np.where(scenario.harmful | (harm == 0), this, 0))
     counts = {
         f"{HARMS[h]} / {OPERATIONS[o]}": int((resolved & (harm == h) & (operation == o)).sum())
         for h in range(len(HARMS))

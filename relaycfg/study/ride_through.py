@@ -20,13 +20,14 @@ class Runs:
     """The courses of all hold cases as severities of one element, embedded in the worst standing severity.
 
     ``severity`` [courses, segments, channels] and ``duration_s`` [courses, segments], padded with zero seconds;
-    ``names`` one a course, ``cases`` its case number.
+    ``names`` one a course, ``cases`` its case number, ``case_names`` one a case.
     """
 
     severity: FloatArray
     duration_s: FloatArray
     names: tuple[str, ...]
     cases: tuple[int, ...]
+    case_names: dict[int, str]
     standing: float
     standing_name: str
     window_s: float
@@ -69,6 +70,7 @@ def runs_of(cases: tuple[Case, ...], element: Element, device: Device, geometry:
         seconds,
         tuple(course_name(case, course) for case, course in passing),
         tuple(case.number for case, _ in passing),
+        {case.number: f"case {case.number}, {case.name}" for case, _ in passing},
         float(still[worst].max()),
         course_name(*lasting[worst]),
         window_s(device, frequency_hz),

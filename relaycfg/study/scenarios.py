@@ -22,7 +22,7 @@ class Scenarios:
     """The states of one place, one supply level and one load model; every array is [states].
 
     ``severity`` is the worst channel of each element the device has. ``deadline_s`` is inf where nothing is
-    harmed behind the relay's switch; ``elsewhere`` tells harm at boards that switch does not disconnect.
+    harmed behind the relay's switch.
     """
 
     place: str
@@ -33,7 +33,6 @@ class Scenarios:
     core: BoolArray
     high: BoolArray
     low: BoolArray
-    elsewhere: BoolArray
     highest_v: FloatArray
     highest_board: NDArray[np.intp]
     resolved: BoolArray
@@ -76,14 +75,12 @@ def judge(site: Site, relay: Relay, network: Network, place: str, level: str, mo
     equipment = site.equipment
     magnitudes = np.abs(solved.l_n)
     behind = [network.boards.index(b) for b in site.behind(relay.trips)]
-    outside = [k for k in range(len(network.boards)) if k not in behind]
     minding = {load.board for load in site.loads if load.minds_low_v}
     low_boards = [k for k in behind if network.boards[k] in minding]
     highest = magnitudes[behind].max(axis=1)
     highest_v = highest.max(axis=0)
     lowest_v = magnitudes[low_boards].min(axis=(0, 1)) if low_boards else np.full_like(highest_v, np.inf)
     high_s, low_s = high_deadline_s(equipment, highest_v), low_deadline_s(equipment, lowest_v)
-    other_v = magnitudes[outside].max(axis=(0, 1)) if outside else np.zeros_like(highest_v)
     taps = tap(solved, network.boards.index(relay.measures_at))
     return Scenarios(
         place,
@@ -97,7 +94,6 @@ def judge(site: Site, relay: Relay, network: Network, place: str, level: str, mo
         is_core(equipment, highest_v, lowest_v),
         np.isfinite(high_s),
         np.isfinite(low_s),
-        np.isfinite(high_deadline_s(equipment, other_v)),
         highest_v,
         np.array(behind)[np.argmax(highest, axis=0)],
         solved.converged,

@@ -1,10 +1,13 @@
 """Findings on settings: what trips on a sound supply, what the device cannot be set to, and what to turn to what."""
 
+import numpy as np
+
 from relaycfg.model.device import Function, SettableRange
 from relaycfg.model.results import CaseResult, Finding
 from relaycfg.model.settings import Settings, Stage
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.margins import Security
+from relaycfg.study.ride_through import ride_through
 from relaycfg.study.settle import Settled
 from relaycfg.study.stages import ActiveStage
 
@@ -42,22 +45,35 @@ def insecure(
         if secure.secure:
             continue
         unit = "%" if a.function is Function.UNBALANCE else "V"
-        failed = [c for c in cases if c.expect == "hold" and any(o.startswith(a.stage.label) for o in c.operated)]
+        failed = [c for c in cases if c.expect == "hold" and any(o.stage == a.stage.label for o in c.operated)]
         more = f" and {len(failed) - 1} more case{'s' if len(failed) > 2 else ''}" if len(failed) > 1 else ""
-        volts = f"{abs(secure.volts or 0):.1f} {unit} {'lower' if a.function is Function.UNDERVOLTAGE else 'higher'}"
-        longer = "no delay is long enough" if secure.seconds is None else f"{abs(secure.seconds):.2f} s longer"
+        volts, longer = _would_hold(a)
         new = _nearest(settled.settings.of(a.function), a.stage)
         found.append(
             Finding(
                 "exception",
                 a.stage.label,
                 f"{a.stage.label}, {a.stage.pickup:.1f} {unit} {a.stage.delay_s:g} s, trips in "
-                f"{secure.seconds_case}{more}; to hold, at this delay {volts}, or at this pickup {longer}",
+                f"{secure.seconds_case}{more}; at this delay {volts}, at this pickup {longer}",
                 turn(evidence, a.stage, new) if existing and new else f"switch {a.stage.label} off",
                 "it disconnects a sound supply",
             )
         )
     return found
+
+
+def _would_hold(active: ActiveStage) -> tuple[str, str]:
+    """The nearest settable pickup that holds at the set delay, and delay that holds at the set pickup, in words."""
+    ladder, stage, band = active.ladder, active.stage, active.sensitive
+    unit = "%" if stage.function is Function.UNBALANCE else "V"
+    pickup = ladder.sensitive
+    reach = ride_through(ladder.runs, pickup, pickup * stage.dropout_ratio, active.hold_s).seconds
+    holding = np.flatnonzero((band.delay_s > reach) & (pickup > band.pickup))
+    volts = f"{ladder.pickups[holding[0]]:g} {unit} would hold" if len(holding) else "no settable pickup would hold"
+    here = ride_through(ladder.runs, np.array([band.pickup]), np.array([band.dropout]), active.hold_s).seconds[0]
+    longer = np.flatnonzero(ladder.shortest > here)
+    delay = f"{ladder.delays[longer[0]]:g} s would hold" if len(longer) else "no delay is long enough"
+    return volts, delay
 
 
 def _nearest(stages: tuple[Stage, ...], old: Stage) -> Stage | None:
@@ -74,7 +90,7 @@ def failed_cases(
     for case in cases:
         if case.passed:
             continue
-        culprits = [o for o in case.operated if o.split(" after ")[0] not in insecure]
+        culprits = [f"{o.stage} after {o.seconds:.2f} s" for o in case.operated if o.stage not in insecure]
         if case.outcome == "hold":
             found.append(
                 Finding(
@@ -153,6 +169,17 @@ def rules(evidence: Evidence, settings: Settings, existing: bool) -> list[Findin
                 "the settings were derived from other inputs than this site's files hold now",
                 "derive again or find out what changed",
                 "margins on an older sheet may no longer hold",
+            )
+        )
+    if evidence.relay.poles == "lines and neutral" and evidence.site.conductor(evidence.relay.trips) == "PEN":
+        found.append(
+            Finding(
+                "warning",
+                "poles",
+                f"the switch of {evidence.relay.trips} opens the neutral, and the incoming conductor is a PEN: a PEN "
+                "is never switched",
+                "place the switch behind the split of N and PE, or open the lines only",
+                "protective earth would be opened with the neutral",
             )
         )
     if evidence.relay.poles == "lines":

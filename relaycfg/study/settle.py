@@ -47,7 +47,9 @@ def settle(evidence: Evidence) -> Settled:
     chosen = _raise_each(evidence, wanted, chosen)
     displacement = evidence.ladders.get(Function.DISPLACEMENT)
     if displacement is not None:
-        chosen[Function.DISPLACEMENT] = _with_detection(displacement, chosen[Function.DISPLACEMENT])
+        chosen[Function.DISPLACEMENT] = _with_detection(
+            displacement, chosen[Function.DISPLACEMENT], _displacement_floor(evidence, displacement)
+        )
     unbalance = evidence.ladders.get(Function.UNBALANCE)
     if unbalance is not None:
         left = _without(evidence, wanted, chosen, tuple(chosen))
@@ -126,11 +128,25 @@ def _core(evidence: Evidence, states: tuple[BoolArray, ...]) -> tuple[BoolArray,
     return tuple(mask & s.core for mask, s in zip(states, evidence.scenarios, strict=True))
 
 
-def _with_detection(ladder: Ladder, rungs: tuple[Rung, ...]) -> tuple[Rung, ...]:
+def _displacement_floor(evidence: Evidence, ladder: Ladder) -> float:
+    """Displacement that may stand although no case shows it: what the band permits, until it has been measured.
+
+    Lines anywhere inside the band displace the neutral by up to a third of its width (own arithmetic; 207/253/253 V
+    is 15 V).
+    """
+    supply = evidence.site.supply
+    known = any(
+        i.field == "supply.displacement_percent" and i.tag in ("measured", "letter") for i in evidence.site.inputs
+    )
+    factor = len(supply.geometry.names) if ladder.element.quantity == "3v0" else 1
+    return 0.0 if known else factor * (supply.high_v - supply.low_v) / len(supply.geometry.names)
+
+
+def _with_detection(ladder: Ladder, rungs: tuple[Rung, ...], floor: float) -> tuple[Rung, ...]:
     """Add the detection stage where one is free and it would see less displacement than the stages chosen."""
     if len(rungs) >= ladder.element.stages:
         return rungs
-    detection = detection_rung(ladder)
+    detection = detection_rung(ladder, floor)
     if detection is None or (rungs and detection.pickup >= rungs[0].pickup):
         return rungs
     return (detection, *rungs)

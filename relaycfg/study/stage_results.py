@@ -1,15 +1,13 @@
 """Each stage as printed: figures on every scale, bounds with their arithmetic, margins, and the reason."""
 
-import numpy as np
-
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray
 from relaycfg.model.results import Bound, Margins, StageResult
 from relaycfg.model.settings import Settings, Stage
+from relaycfg.study.coverage import cover_of
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.margins import Dependability, Security, dependability
-from relaycfg.study.shares import share
-from relaycfg.study.stages import ActiveStage, clears
+from relaycfg.study.stages import ActiveStage
 
 SAME = 1e-6
 
@@ -51,8 +49,7 @@ def _on(
     stage, element = active.stage, active.ladder.element
     others = tuple(a for a in all_active if a is not active)
     depend = dependability(active, others, evidence, wanted)
-    cleared = sum(int((w & clears(active, s, evidence)).sum()) for s, w in zip(evidence.scenarios, wanted, strict=True))
-    adds = share(cleared, sum(int(w.sum()) for w in wanted))
+    percent = cover_of(evidence, "", (active,)).cleared_percent
     unbalance = stage.function is Function.UNBALANCE
     error = float(element.accuracy.pickup_error(stage.pickup))
     return StageResult(
@@ -76,8 +73,8 @@ def _on(
             depend.units,
             depend.state,
         ),
-        adds,
-        _reason(secure, adds.percent),
+        percent,
+        _reason(active, secure, percent),
     )
 
 
@@ -93,8 +90,8 @@ def _bounds(active: ActiveStage, secure: Security, depend: Dependability) -> tup
     error = float(element.accuracy.pickup_error(stage.pickup))
     timing = float(element.accuracy.time_error(stage.delay_s))
     bounds = []
-    if secure.volts is not None:
-        limit = sign * (active.sensitive.pickup - secure.volts)
+    if secure.volts is not None and secure.limit is not None:
+        limit = sign * secure.limit
         standing = sign * runs.standing
         if abs(limit - standing) < SAME:
             origin = f"standing {standing:.1f} {unit}"
@@ -164,8 +161,17 @@ def _source(case: str) -> str:
     return "no case" if case.startswith("no case") else f"table of cases, {case.split(',')[0]}"
 
 
-def _reason(secure: Security, percent: float) -> str:
-    verb = "holds through every case" if secure.secure else f"trips in {secure.seconds_case}"
-    next_one = f", next to fail {secure.volts_case}" if secure.secure and secure.volts is not None else ""
-    cleared = f"; clears {percent:.1f} % of the harmful states on its own" if np.isfinite(percent) else ""
-    return f"{verb}{next_one}{cleared}"
+def _reason(active: ActiveStage, secure: Security, percent: float | None) -> str:
+    stage = active.stage
+    unit = "%" if stage.function is Function.UNBALANCE else "V"
+    parts = []
+    if not secure.secure:
+        parts.append(f"trips in {secure.seconds_case}")
+    else:
+        if secure.volts is not None:
+            parts.append(f"{stage.pickup:.1f} {unit} is {secure.volts:.1f} {unit} clear of {secure.volts_case}")
+        if secure.seconds is not None:
+            parts.append(f"{stage.delay_s:g} s outlasts {secure.seconds_case} by {secure.seconds:.3f} s")
+    if percent is not None:
+        parts.append(f"alone it clears {percent:.1f} % of the harmful states in time")
+    return "; ".join(parts) or "no case limits it and no modelled state harms anything"

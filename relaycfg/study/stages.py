@@ -1,6 +1,6 @@
 """Active stages as they act on one relay: both ends of their error bands, and when they clear a break state."""
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -8,14 +8,14 @@ from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
 from relaycfg.model.settings import Settings, Stage
 from relaycfg.relay import Band, least_sensitive, most_sensitive, severities
-from relaycfg.study.evidence import Evidence, ladder_of
+from relaycfg.study.evidence import Evidence
 from relaycfg.study.ladder import Ladder
 from relaycfg.study.scenarios import Scenarios
 
 
 @dataclass(frozen=True)
 class ActiveStage:
-    """A stage that is on, with the ladder of its element as the setting counts it."""
+    """A stage that is on, with the ladder of its element."""
 
     stage: Stage
     ladder: Ladder
@@ -28,28 +28,29 @@ class ActiveStage:
         """Function number of its element."""
         return self.stage.function
 
+    @property
+    def hold_s(self) -> float:
+        """How long its count is kept through a gap."""
+        return self.stage.hold_s if self.stage.reset == "held" else 0.0
+
     def severity(self, scenario: Scenarios, evidence: Evidence) -> FloatArray:
         """Severity [states] that decides: the worst channel, or the least one where all phases are asked for."""
-        device_element = evidence.ladders[self.function].element
-        if self.stage.phases == "any" and self.ladder.element == device_element:
+        if self.stage.phases == "any":
             return scenario.severity[self.function]
         channels = severities(
             self.ladder.element, evidence.site.supply.geometry, scenario.taps, evidence.relay.device.displacement_from
         )
-        worst: FloatArray = channels.min(axis=-1) if self.stage.phases == "all" else channels.max(axis=-1)
-        return worst
+        least: FloatArray = channels.min(axis=-1)
+        return least
 
 
-def active_stages(evidence: Evidence, settings: Settings, alarms: bool = False) -> tuple[ActiveStage, ...]:
-    """The stages that are on and trip (``alarms``: those that only signal) and whose element the device has."""
+def active_stages(evidence: Evidence, settings: Settings) -> tuple[ActiveStage, ...]:
+    """The stages that are on and trip and whose element the device has."""
     found = []
     for stage in settings.stages:
         ladder = evidence.ladders.get(stage.function)
-        if not stage.on or ladder is None or (stage.action == "alarm") != alarms:
+        if not stage.on or ladder is None or stage.action == "alarm":
             continue
-        if stage.quantity and stage.quantity != ladder.element.quantity:
-            element = replace(ladder.element, quantity=stage.quantity)
-            ladder = ladder_of(evidence.site, evidence.relay, evidence.cases, element)
         clearing = float(ladder.clearing_of(np.array(stage.delay_s)))
         element = ladder.element
         found.append(

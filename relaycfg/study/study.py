@@ -5,17 +5,16 @@ from dataclasses import replace
 import numpy as np
 
 from relaycfg.model.cases import Case, Course, Segment
-from relaycfg.model.device import Function
-from relaycfg.model.geometry import BoolArray
-from relaycfg.model.results import Harm, Operation, PlanePoint, Share, Study
+from relaycfg.model.results import Harm, Operation, PlanePoint, Study
 from relaycfg.model.settings import Settings
 from relaycfg.model.site import Relay, Site
 from relaycfg.study.asymmetry import smallest_asymmetry, worked_break
 from relaycfg.study.breaks import break_study
 from relaycfg.study.case_verdicts import case_results
 from relaycfg.study.choice import harmful_states
-from relaycfg.study.closed import closed_groups
+from relaycfg.study.closed import blocked, closed_groups
 from relaycfg.study.corridors import corridors
+from relaycfg.study.coverage import cleared, coverage
 from relaycfg.study.evidence import Evidence, gather
 from relaycfg.study.feeds import feed_ranges
 from relaycfg.study.findings import findings
@@ -25,9 +24,8 @@ from relaycfg.study.place_summary import HARMS
 from relaycfg.study.scenarios import AS_MODELLED, Scenarios
 from relaycfg.study.schedule import test_schedule
 from relaycfg.study.settle import Settled, settle
-from relaycfg.study.shares import share
 from relaycfg.study.stage_results import stage_results
-from relaycfg.study.stages import ActiveStage, active_stages, clears, operating_s
+from relaycfg.study.stages import ActiveStage, active_stages, operating_s
 
 PLANE_POINTS = 240
 DEAD_S = 1.0
@@ -58,8 +56,9 @@ def _judge(evidence: Evidence, settings: Settings, settled: Settled, existing: b
     wanted = harmful_states(evidence.scenarios)
     securities = {a.stage.label: security(a) for a in active}
     cases = case_results(evidence, settings, active, securities)
-    left = tuple(w & ~_cleared(active, s, evidence) for s, w in zip(evidence.scenarios, wanted, strict=True))
-    closed = closed_groups(evidence, wanted)
+    left = tuple(w & ~cleared(active, s, evidence) for s, w in zip(evidence.scenarios, wanted, strict=True))
+    never = blocked(evidence, wanted)
+    closed = closed_groups(evidence, never)
     places = break_study(evidence, active)
     feeds = feed_ranges(evidence)
     return Study(
@@ -75,6 +74,7 @@ def _judge(evidence: Evidence, settings: Settings, settled: Settled, existing: b
         corridors(evidence),
         closed,
         sum(int(m.sum()) for m in left),
+        sum(int((m & n).sum()) for m, n in zip(left, never, strict=True)),
         findings(
             evidence, settings, settled, active, securities, cases, left, closed, places.summaries, feeds, existing
         ),
@@ -84,16 +84,9 @@ def _judge(evidence: Evidence, settings: Settings, settled: Settled, existing: b
         _standing_v0(evidence),
         tuple((f"{f.what}, {f.between}", f.lowest_v, f.highest_v) for f in feeds),
         smallest_asymmetry(evidence, active),
-        _coverage(evidence, active),
+        coverage(evidence, active),
         evidence.site.digest,
     )
-
-
-def _cleared(active: tuple[ActiveStage, ...], scenario: Scenarios, evidence: Evidence) -> BoolArray:
-    cleared = np.zeros(scenario.deadline_s.shape, bool)
-    for stage in active:
-        cleared |= clears(stage, scenario, evidence)
-    return cleared
 
 
 def _with_energising(evidence: Evidence) -> Evidence:
@@ -117,19 +110,23 @@ def _with_energising(evidence: Evidence) -> Evidence:
         "computed",
         False,
         (course,),
-        f"break at {scenario_.place}, {volts_v:.1f} V, supply {scenario_.level}",
+        f"break at {scenario_.place}, {volts_v:.1f} V, due within {scenario_.deadline_s[state]:g} s, supply "
+        f"{scenario_.level}",
+        DEAD_S,
+        float(scenario_.deadline_s[state]),
     )
     return replace(evidence, cases=(*evidence.cases, case))
 
 
 def _plane(evidence: Evidence, active: tuple[ActiveStage, ...]) -> tuple[PlanePoint, ...]:
-    """The first states of each seen place at nominal supply, as modelled."""
+    """States of each seen place at nominal supply, as modelled: those not cleared in time, then the first ones."""
     shown = [s for s in evidence.scenarios if s.level == NOMINAL and s.model == AS_MODELLED]
     each = PLANE_POINTS // max(len(shown), 1)
     points = []
     for scenario in shown:
         operated = operating_s(active, scenario, evidence)
-        for k in range(min(each, len(operated))):
+        missed = scenario.harmful & (operated > scenario.deadline_s)
+        for k in np.argsort(~missed, kind="stable")[:each]:
             harm: Harm = HARMS[int(scenario.high[k]) + 2 * int(scenario.low[k])]
             late = operated[k] > scenario.deadline_s[k]
             operation: Operation = "none" if not np.isfinite(operated[k]) else "late" if late else "in time"
@@ -141,35 +138,3 @@ def _standing_v0(evidence: Evidence) -> float:
     """Largest V0 of the standing cases [V]."""
     taps = [s.tap for case in evidence.cases if case.standing for c in case.courses for s in c.segments]
     return max(float(abs(t[:-1].mean())) for t in taps)
-
-
-def _coverage(evidence: Evidence, active: tuple[ActiveStage, ...]) -> dict[str, Share]:
-    """Shares at nominal supply over the places seen; a state counts only if both load models agree."""
-    nominal = [s for s in evidence.scenarios if s.level == NOMINAL]
-    pairs = list(zip(nominal[::2], nominal[1::2], strict=True))
-    sets = {
-        "59": (Function.OVERVOLTAGE,),
-        "27": (Function.UNDERVOLTAGE,),
-        "59 + 27": (Function.OVERVOLTAGE, Function.UNDERVOLTAGE),
-        "59N": (Function.DISPLACEMENT,),
-        "all": tuple(Function),
-    }
-    found = {}
-    for name, functions in sets.items():
-        mine = tuple(a for a in active if a.function in functions)
-        if not mine:
-            continue
-        harmed = cleared = 0
-        for modelled, impedance in pairs:
-            either = (modelled.harmful | impedance.harmful) & modelled.resolved & impedance.resolved
-            both = np.ones(len(either), bool)
-            for scenario in (modelled, impedance):
-                both &= ~scenario.harmful | _cleared(mine, scenario, evidence)
-            harmed += int(either.sum())
-            cleared += int((either & both).sum())
-        found[f"cleared in time by {name}"] = share(cleared, harmed)
-        seen = sum(
-            int(np.isfinite(np.maximum(*(operating_s(mine, s, evidence) for s in pair))).sum()) for pair in pairs
-        )
-        found[f"seen by {name}"] = share(seen, sum(len(m.resolved) for m, _ in pairs))
-    return found

@@ -39,7 +39,8 @@ def ladder(rng: np.random.Generator, stages: int, function: Function) -> Ladder:
     seconds = rng.choice([0.05, 0.2, 0.6, 1.5], (6, 2))
     names = tuple(f"case {k}" for k in range(6))
     standing = sign * (227.0 if sign < 0 else 233.0)
-    runs = Runs(sign * volts, seconds, names, tuple(range(6)), standing, "standing", 0.02, False)
+    numbers = tuple(range(6))
+    runs = Runs(sign * volts, seconds, names, numbers, dict(enumerate(names)), standing, "standing", 0.02, False)
     return Ladder(element, relay, 50.0, 230.0, 3**0.5, runs)
 
 
@@ -57,7 +58,6 @@ def scenario(rng: np.random.Generator, function: Function, states: int) -> Scena
         deadline,
         harmful & (rng.random(states) < 0.4),
         harmful,
-        still,
         still,
         volts,
         np.zeros(states, int),
@@ -121,11 +121,14 @@ def test_every_chosen_stage_is_secure_with_the_margin_it_was_chosen_at(seed: int
 
 def test_the_detection_stage_is_the_lowest_pickup_with_a_secure_delay() -> None:
     own = ladder(np.random.default_rng(1), 2, Function.OVERVOLTAGE)
-    rung = detection_rung(own)
+    rung = detection_rung(own, 0.0)
     assert rung is not None
     fastest = own.fastest(rung.margin_units)
     assert (fastest[: rung.pickup] == len(own.delays)).all()
     assert fastest[rung.pickup] == rung.delay < len(own.delays)
+    higher = detection_rung(own, float(own.sensitive[rung.pickup]))
+    assert higher is not None
+    assert higher.pickup == rung.pickup + 1
 
 
 def test_demand_counts_every_reachable_state_once() -> None:

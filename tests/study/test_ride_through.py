@@ -13,7 +13,8 @@ def runs(
     severity: np.ndarray, duration_s: np.ndarray, standing: float, shared: bool = False, window: float = 0.0
 ) -> Runs:
     names = tuple(f"course {k}" for k in range(len(severity)))
-    return Runs(severity, duration_s, names, tuple(range(len(severity))), standing, "standing", window, shared)
+    numbers = tuple(range(len(severity)))
+    return Runs(severity, duration_s, names, numbers, dict(enumerate(names)), standing, "standing", window, shared)
 
 
 LEVELS = st.integers(min_value=200, max_value=300)
@@ -73,21 +74,20 @@ def test_r_never_rises_with_the_pickup() -> None:
     seconds = rng.uniform(0, 2, (20, 6))
     pickup = np.arange(206.0, 310.0)
     reach = ride_through(runs(severity, seconds, 205.0), pickup, 0.97 * pickup).seconds
-    assert (np.diff(reach[np.isfinite(reach)]) <= 1e-12).all()
-    assert np.isfinite(reach).argmax() == np.isfinite(reach).sum() * 0 + int((~np.isfinite(reach)).sum())
+    finite = np.isfinite(reach)
+    assert (np.diff(reach[finite]) <= 1e-12).all()
+    assert (np.diff(finite.astype(int)) >= 0).all()
 
 
-@pytest.mark.parametrize(("ratio", "lowest"), [(0.999999, 256), (0.98, 261), (0.95, 270)])
-def test_the_standing_case_sets_the_lowest_pickup_by_the_closed_form(ratio: float, lowest: int) -> None:
-    # Own arithmetic: p >= x0 / (r (1 - a)); 253 V, 1 percent: 256 V without drop-out, 261 at 0.98, 270 at 0.95,
-    # as whole volts rounded to the nearest, so one volt below fails by the excursion that never drops out.
+@pytest.mark.parametrize(("ratio", "volts"), [(0.999999, 255.6), (0.98, 260.8), (0.95, 269.0)])
+def test_the_standing_case_sets_the_lowest_pickup_by_the_closed_form(ratio: float, volts: float) -> None:
+    # Own arithmetic: p >= x0 / (r (1 - a)); 253 V and 1 percent need 255.6 V without drop-out (256 on whole volts),
+    # 260.8 V (261) at 0.98 and 269.0 V (270) at 0.95.
     swell = np.full((1, 1, 3), 300.0)
-    pickup = np.arange(240.0, 300.0)
+    pickup = np.arange(240.0, 300.0, 0.1)
     sensitive = pickup * 0.99
     reach = ride_through(runs(swell, np.array([[1.0]]), 253.0), sensitive, sensitive * ratio)
-    first = float(pickup[np.isfinite(reach.seconds)][0])
-    assert first == np.ceil(253 / (ratio * 0.99) - 1e-9) or first == np.floor(253 / (ratio * 0.99)) + 1
-    assert abs(253 / (ratio * 0.99) - lowest) < 1.0
+    assert float(pickup[np.isfinite(reach.seconds)][0]) == pytest.approx(volts, abs=0.11)
 
 
 def test_the_measuring_window_lengthens_every_run() -> None:

@@ -124,3 +124,8 @@ def write(
 def site(folder: Path, **changes: str) -> Site:
     """The invented site, read as a user's files would be."""
     return read_site(write(folder, **changes))
+
+
+def read(folder: Path) -> Site:
+    """The site in a folder as it stands now."""
+    return read_site(folder / "site.toml")
