@@ -289,7 +289,8 @@ class Site:
 
     def behind(self, name: str) -> tuple[str, ...]:
         """Boards behind the incoming switch of ``name``, itself first; all boards for the source."""
-        return tuple(b.name for b in self.boards if name == SOURCE or name in self.path(b.name))
+        found = [b.name for b in self.boards if name == SOURCE or name in self.path(b.name)]
+        return tuple(sorted(found, key=lambda b: len(self.path(b))))
 
     @property
     def places(self) -> tuple[str, ...]:

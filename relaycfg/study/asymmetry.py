@@ -14,6 +14,7 @@ from relaycfg.study.stages import ActiveStage
 
 LARGEST_RATIO = 100.0
 RATIO_STEPS = 20001
+STILL_V = 0.001
 
 
 def smallest_asymmetry(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> dict[str, float | None]:
@@ -51,8 +52,14 @@ def _open_star(evidence: Evidence, ratios: np.ndarray) -> ComplexArray:
     conductance[:, 0] = ratios
     shift = (conductance * emf).sum(axis=1) / conductance.sum(axis=1)
     l_n = emf - shift[:, None]
-    # The neutral moves against PE as far as against the star point, unless PE is tied to it behind the break.
-    return np.concatenate([l_n, shift[:, None]], axis=1)
+    return np.concatenate([l_n, np.zeros((len(ratios), 1)) if _tied(evidence) else shift[:, None]], axis=1)
+
+
+def _tied(evidence: Evidence) -> bool:
+    """Whether PE moves with N at the relay in every break it could see: N against PE then stays near 0."""
+    relay = evidence.relay
+    n_pe = [np.abs(s.taps[:, -1]) for s in evidence.scenarios if s.place in seen_places(evidence.site, relay)]
+    return all(float(np.nan_to_num(volts).max(initial=0.0)) < STILL_V for volts in n_pe)
 
 
 def worked_break(evidence: Evidence) -> WorkedBreak | None:

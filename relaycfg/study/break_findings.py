@@ -106,7 +106,9 @@ def _what_clears(
         if orders:
             return "; ".join(orders)
     blocked = [g for g in closed if g.place == place and g.core]
-    return f"no secure setting exists: {blocked[0].sentence}" if blocked else "see the closed corridor"
+    if blocked:
+        return f"no secure setting exists for {sum(g.scenarios for g in blocked)} of them: {blocked[0].sentence}"
+    return "each could be cleared by itself, but not all by the stages this device has: use a device with more stages"
 
 
 def blind(evidence: Evidence, settings: Settings, active: tuple[ActiveStage, ...]) -> list[Finding]:

@@ -46,7 +46,7 @@ def breaks(
             for place in places
             if place != NONE
         )
-    seen = sum(not why_not_seen(site, site.relay, place) for place in site.places)
+    seen = sum(not why_not_seen(site, network, place) for place in site.places)
     return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows))
 
 

@@ -9,19 +9,24 @@ from relaycfg.model.geometry import ComplexArray
 from relaycfg.model.site import Fault, Motor, Site, UserCase
 from relaycfg.network import FaultKind, Network, connected, motor_start, short_circuit, tap
 from relaycfg.study.levels import Healthy, Levels
-from relaycfg.study.standing import FOR_EVER, standing_cases, third_harmonic_v0, with_harmonic
+from relaycfg.study.standing import FOR_EVER, HIGHEST_DISPLACEMENT, standing_cases
+from relaycfg.study.third_harmonic import ThirdHarmonic, third_harmonic, with_harmonic
 
 POLE_LATE_S = 0.02
+"""Spread of a switch's poles on closing (own choice, a cycle)."""
 RECOVERED_PU = 0.03
+"""Deviation at which a generating set counts as recovered (own choice)."""
 RECOVERY_STEPS = 24
 FAULT_KINDS: tuple[FaultKind, ...] = ("L-N", "L-PE", "L-L", "three-phase")
+STIFF_OHM = 0.001 + 0j
+"""Stands for a bolted fault at the terminals of an ideal source, which would have no solution."""
 
 
 def must_hold_cases(site: Site, network: Network, levels: Levels, healthy: Healthy, board: str) -> tuple[Case, ...]:
     """Every case the relay at ``board`` is played through, numbered from 1 in the order of the printed table."""
     cases = standing_cases(site, healthy, board)
     if site.relay is not None and site.relay.device.detector == "rms":
-        cases[-1] = _with_third_harmonic(cases[-1], third_harmonic_v0(site, board))
+        cases[-1] = _with_third_harmonic(cases[-1], third_harmonic(site, board))
     cases += [_dip(site, *row) for row in site.reference.dips]
     cases += [_swell(site, *row) for row in site.reference.swells]
     cases.append(_interruption(site))
@@ -40,16 +45,21 @@ def sound_tap(site: Site, level_pu: float = 1.0) -> ComplexArray:
     return np.append(site.supply.nominal_v * level_pu * site.supply.geometry.phasors, 0.0)
 
 
-def _with_third_harmonic(case: Case, harmonic_v0: float) -> Case:
-    if harmonic_v0 == 0.0:
+def _with_third_harmonic(case: Case, harmonic: ThirdHarmonic) -> Case:
+    """What an RMS device reads in the courses of highest V0 and highest N-PE."""
+    if harmonic.v0_v == 0.0 and harmonic.n_pe_v == 0.0:
         return case
-    first = case.courses[0]
-    moved = Course(first.label, tuple(replace(s, tap=with_harmonic(s.tap, harmonic_v0)) for s in first.segments))
-    v0 = abs(moved.segments[0].tap[:-1].mean())
+    courses = tuple(
+        Course(c.label, tuple(replace(s, tap=with_harmonic(s.tap, harmonic)) for s in c.segments))
+        if c.label.startswith(HIGHEST_DISPLACEMENT)
+        else c
+        for c in case.courses
+    )
+    v0 = abs(courses[0].segments[0].tap[:-1].mean())
     return replace(
         case,
-        courses=(moved, *case.courses[1:]),
-        figures=f"{case.figures}; with {harmonic_v0:.1f} V of third harmonic V0 {v0:.1f} V",
+        courses=courses,
+        figures=f"{case.figures}; with {harmonic.v0_v:.1f} V of third harmonic V0 {v0:.1f} V",
     )
 
 
@@ -134,10 +144,17 @@ def _motor_start(site: Site, network: Network, levels: Levels, board: str, index
 
 
 def _fault(site: Site, levels: Levels, board: str, fault: Fault) -> Case:
+    """Every kind at the far and near end and both limits; L-PE only where the faulted board has a PE."""
+    stiff = site.source.line_ohm == 0 and all(site.board(b).cable is None for b in site.path(fault.board))
+    ends = {"far": fault.circuit_ohm, "near": 0j}
+    if stiff:
+        ends = {where: ohm if ohm != 0 else STIFF_OHM for where, ohm in ends.items()}
+    pe = short_circuit(site, fault.board, "L-N", ends["far"], levels.upper)[fault.board][-1]
+    kinds = tuple(k for k in FAULT_KINDS if k != "L-PE" or not np.isnan(pe))
     courses = []
     for level, emf in (("upper limit", levels.upper), ("lower limit", levels.lower)):
-        for where, ohm in (("far", fault.circuit_ohm), ("near", 0j)):
-            for kind in FAULT_KINDS:
+        for where, ohm in ends.items():
+            for kind in kinds:
                 taps = short_circuit(site, fault.board, kind, ohm, emf)
                 label = f"{kind} {where} end, {level}"
                 courses.append(Course(label, (Segment(fault.clearing_s, taps[board]),)))

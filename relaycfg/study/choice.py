@@ -63,8 +63,8 @@ def demand(ladder: Ladder, scenarios: tuple[Scenarios, ...], wanted: tuple[BoolA
 def choose(ladder: Ladder, own: Demand, need: Demand, stages: int) -> tuple[Rung, ...]:
     """At most ``stages`` stages in order of rising severity; empty where nothing is covered.
 
-    ``own`` counts all states to be cleared (redundancy), ``need`` those of the core that no other element clears
-    with the full margin. In order: all of ``need`` that any secure stages can cover, at least 98 percent of the
+    ``own`` counts all states to be cleared (redundancy), ``need`` those of the core that depend on this element. In
+    order: all of ``need`` that any secure stages can cover, at least 98 percent of the
     greatest cover of ``own``, fewest stages, security margin (to the cap), speed, low pickup.
     """
     goal = _score(ladder, own, need, best_cover(ladder, own, need, stages))
@@ -90,18 +90,23 @@ def best_cover(ladder: Ladder, own: Demand, need: Demand, stages: int, units: fl
     first rung of its tightest deadline loses nothing: the distinct first rungs are the only candidates, and the
     search over their subsets is exact.
     """
-    fastest = ladder.fastest(units)
-    clearing = ladder.clearing[fastest]
-    first = [_first(clearing <= limit) for limit in own.deadlines]
-    candidates = [Rung(k, int(fastest[k]), units) for k in sorted({k for k in first if k < len(clearing)})]
+    pool = candidates(ladder, own.deadlines, units)
     best: tuple[Rung, ...] = ()
     score = (0, 0)
-    for count in range(1, min(stages, len(candidates)) + 1):
-        for subset in combinations(candidates, count):
+    for count in range(1, min(stages, len(pool)) + 1):
+        for subset in combinations(pool, count):
             covered = _score(ladder, own, need, subset)
             if covered > score:
                 best, score = subset, covered
     return best
+
+
+def candidates(ladder: Ladder, deadlines: FloatArray, units: float = 0.0) -> list[Rung]:
+    """The first rung that is fast enough for each deadline, secure at ``units`` of margin."""
+    fastest = ladder.fastest(units)
+    clearing = ladder.clearing[fastest]
+    first = {_first(clearing <= limit) for limit in deadlines}
+    return [Rung(k, int(fastest[k]), units) for k in sorted(first) if k < len(clearing)]
 
 
 def raise_margins(

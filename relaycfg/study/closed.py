@@ -13,7 +13,6 @@ from relaycfg.study.ride_through import NOTHING, STANDING
 from relaycfg.study.scenarios import Scenarios
 
 OUT_OF_REACH = -3
-MOST_GROUPS = 12
 
 
 @dataclass(frozen=True)
@@ -55,7 +54,7 @@ def closed_groups(evidence: Evidence, left: tuple[BoolArray, ...]) -> tuple[Clos
             worst = float(scenario.highest_v[mask][mine].max())
             tallies.setdefault(key, []).append((int(mine.sum()), worst, seconds, volts))
     groups = [_group(evidence, key, rows) for key, rows in tallies.items()]
-    return tuple(sorted(groups, key=lambda g: (not g.core, -g.scenarios))[:MOST_GROUPS])
+    return tuple(sorted(groups, key=lambda g: (not g.core, -g.scenarios)))
 
 
 def _clearable(evidence: Evidence, scenario: Scenarios) -> BoolArray:

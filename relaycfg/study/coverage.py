@@ -40,12 +40,16 @@ def coverage(evidence: Evidence, active: tuple[ActiveStage, ...]) -> tuple[Cover
 
 
 def cover_of(evidence: Evidence, name: str, stages: tuple[ActiveStage, ...], as_fed: bool = False) -> Cover:
-    """Cover of one set; ``as_fed`` counts only states in which relay and coil have the volts they need."""
+    """Cover of one set; ``as_fed`` counts only states in which relay and coil have the volts they need.
+
+    States without a solution count as harmful and not cleared, and as not seen.
+    """
     nominal = [s for s in evidence.scenarios if s.level == NOMINAL]
     harmed = in_time = seen = states = 0
     for pair in zip(nominal[::2], nominal[1::2], strict=True):
         resolved = pair[0].resolved & pair[1].resolved
-        either = (pair[0].harmful | pair[1].harmful) & resolved
+        # A state without a solution counts as not cleared.
+        either = pair[0].harmful | pair[1].harmful | ~resolved
         both, operated = resolved.copy(), resolved.copy()
         for scenario in pair:
             working = fed(evidence, scenario) if as_fed else np.ones(len(resolved), bool)

@@ -56,7 +56,7 @@ def security(active: ActiveStage) -> Security:
     return Security(
         band.delay_s > reach,
         as_set(active, least) if found else None,
-        _finite(band.delay_s - reach),
+        _finite(band.delay_s - reach) if reach > 0 else None,
         _units(active),
         band.pickup - least if found else None,
         volts_case if found else "no case limits it",

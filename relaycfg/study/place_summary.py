@@ -2,13 +2,14 @@
 
 import numpy as np
 
+from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
 from relaycfg.model.results import ElementSight, Harm, Operation, Percentiles, PlaceSummary, WorstState
-from relaycfg.model.site import SOURCE, Relay, Site
-from relaycfg.network import LoadStates, Network, Solved
+from relaycfg.model.site import Relay, Site
+from relaycfg.network import LoadStates, Network, Solved, corners, healthy_emf
 from relaycfg.study.deadlines import high_deadline_s
 from relaycfg.study.evidence import Evidence
-from relaycfg.study.scenarios import Scenarios
+from relaycfg.study.scenarios import Scenarios, seen_places
 from relaycfg.study.shares import share
 from relaycfg.study.stages import ActiveStage, operating_s
 
@@ -16,30 +17,35 @@ HARMS: tuple[Harm, ...] = ("none", "high volts", "low volts", "both")
 OPERATIONS: tuple[Operation, ...] = ("in time", "late", "none")
 WORST_SHOWN = 3
 BALANCED_PU = 0.01
+STILL_V = 0.001
 
 
-def why_not_seen(site: Site, relay: Relay | None, place: str) -> str:
+def why_not_seen(site: Site, network: Network, place: str) -> str:
     """Why the relay cannot see a break at ``place``; empty where it can."""
+    relay = site.relay
     if relay is None:
         return "no relay is described for this site"
-    if place != SOURCE and place not in site.path(relay.measures_at):
+    if place not in seen_places(site, relay):
         return f"the break is not upstream of the relay's tap at {relay.measures_at}"
     if all(e.line_to_line_only for e in relay.device.elements):
         return "the device measures line to line only; a lost neutral does not move line-to-line volts"
-    if relay.device.displacement_from == "n-to-earth" and _split_is_downstream(site, relay, place):
-        return _blind_to_pen(relay)
+    if _only_n_to_pe(relay) and not _n_pe_moves(site, network, place):
+        return "N and PE move together: the break is upstream of the split, N against PE stays near 0"
     return ""
 
 
-def _split_is_downstream(site: Site, relay: Relay, place: str) -> bool:
-    """Whether N and PE are still one conductor at the break, so that both move together behind it."""
-    return site.supply.earthing == "TN-C-S" and site.conductor(place) == "PEN" and place in site.path(relay.measures_at)
+def _only_n_to_pe(relay: Relay) -> bool:
+    """Whether N against PE is the only quantity of the device that a lost neutral could move."""
+    others = [e for e in relay.device.elements if not e.line_to_line_only and e.function is not Function.DISPLACEMENT]
+    return relay.device.displacement_from == "n-to-earth" and not others
 
 
-def _blind_to_pen(relay: Relay) -> str:
-    """A device whose only neutral quantity is N against PE is blind upstream of the split."""
-    others = [e for e in relay.device.elements if e.quantity in ("l-n", "line-to-neutral deviation", "spread")]
-    return "" if others else "N and PE move together: the break is upstream of the split, N against PE stays near 0"
+def _n_pe_moves(site: Site, network: Network, place: str) -> bool:
+    """Whether any corner of the load states moves N against PE at the relay's board."""
+    assert site.relay is not None
+    solved = network.solve(place, corners(site), healthy_emf(site))
+    n_pe = np.abs(solved.n_pe[network.boards.index(site.relay.measures_at)])
+    return bool(np.nan_to_num(n_pe).max() > STILL_V)
 
 
 def summarise(
@@ -62,7 +68,7 @@ def summarise(
     magnitudes = np.where(solved.converged, np.abs(solved.l_n), 0.0)
     samples = magnitudes.shape[-1]
     highest = magnitudes.max(axis=(0, 1))
-    why = why_not_seen(site, relay, place)
+    why = why_not_seen(site, network, place)
     equipment = site.equipment
     harmed = np.isfinite(high_deadline_s(equipment, magnitudes.max(axis=1))) & solved.converged
     behind = set(site.behind(relay.trips)) if relay is not None else set()
@@ -169,8 +175,8 @@ def _sights(
     for function in dict.fromkeys(s.function for s in stages):
         mine = tuple(s for s in stages if s.function is function)
         seconds = np.maximum(*(operating_s(mine, scenario, evidence) for scenario in pair))
-        seen = np.isfinite(seconds)
-        fastest = float(seconds.min()) if seen.any() else None
+        seen = np.isfinite(seconds) & pair[0].resolved & pair[1].resolved
+        fastest = float(seconds[seen].min()) if seen.any() else None
         found.append(ElementSight(function, share(int(seen.sum()), len(seen)), fastest))
     return tuple(found)
 

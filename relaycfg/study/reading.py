@@ -22,6 +22,9 @@ EVEN_SHARE = 0.03
 """Largest deviation from their mean of line-to-line volts that still count as even (own choice)."""
 SLIGHT_SHARE, SHIFTED_SHARE = 0.03, 0.07
 """Displacement over nominal: below the first nothing is shown; a sound supply may reach the second (15 V at 230 V)."""
+ALLOWED_SHARE = 0.087
+"""Displacement over nominal, the lines taken as a third of a turn apart, that the supply itself may bring: 15 V from
+207/253/253 V, inside EN 50160's +/-10 % of 230 V, and a little more (20 V; own choice)."""
 PLAUSIBLE = (0.8, 1.2)
 """Source volts over nominal between which a supply is believed (own choice)."""
 
@@ -62,7 +65,7 @@ def read_meter(l_n: Volts3, l_l: Volts3 | None, nominal_v: float) -> Reading:
         load_shares=None if shown is None or pattern != "shifted" else _shares(shown),
         arithmetic=() if shown is None else _arithmetic(volts, shown),
         causes=_causes(pattern, volts, l_l, nominal_v, shown),
-        check_first=tuple(step for step in words.CHECK_FIRST[pattern] if l_l is None or step != words.MEASURE_LINES),
+        check_first=_steps(pattern, volts, l_l, nominal_v),
         do_not=words.DO_NOT[pattern],
     )
 
@@ -133,14 +136,29 @@ def _arithmetic(volts: FloatArray, shift: Shift) -> tuple[str, ...]:
     )
 
 
+def _steps(pattern: Pattern, volts: FloatArray, l_l: Volts3 | None, nominal_v: float) -> tuple[str, ...]:
+    """What to check first; volts between lines are not asked for where they are given."""
+    if pattern == "shifted" and _known(volts, l_l, nominal_v) == "supply may":
+        return words.UNDECIDED_FIRST
+    return tuple(step for step in words.CHECK_FIRST[pattern] if l_l is None or step != words.MEASURE_LINES)
+
+
+def _known(volts: FloatArray, l_l: Volts3 | None, nominal_v: float) -> words.Known:
+    """What the readings say about the lines themselves."""
+    if l_l is not None:
+        return "lines even"
+    if volts.max() < (1 + SLIGHT_SHARE) * nominal_v:
+        return "none high"
+    as_even = abs(three_phase().phasors @ volts) / len(volts)
+    return "supply may" if as_even < ALLOWED_SHARE * nominal_v else "lines unknown"
+
+
 def _causes(
     pattern: Pattern, volts: FloatArray, l_l: Volts3 | None, nominal_v: float, shift: Shift | None
 ) -> tuple[Cause, ...]:
     causes = list(words.CAUSES[pattern])
     if pattern in ("shifted", "slight"):
-        none_high = volts.max() < (1 + SLIGHT_SHARE) * nominal_v
-        known = "lines even" if l_l is not None else "none high" if none_high else "lines unknown"
-        causes = list(words.SHIFTED_CAUSES[pattern, known])
+        causes = list(words.SHIFTED_CAUSES[pattern, _known(volts, l_l, nominal_v)])
     if pattern == "one line low":
         causes = list(words.one_line_low(volts, l_l, EVEN_SHARE))
     if shift is not None:

@@ -1,34 +1,41 @@
 """Causes, first checks and cautions that go with each pattern of meter readings."""
 
+from typing import Literal
+
 import numpy as np
 
 from relaycfg.model.geometry import FloatArray
 from relaycfg.model.reading import Cause
+
+Known = Literal["lines even", "lines unknown", "none high", "supply may"]
+"""What the readings say about the lines themselves, where the neutral looks moved."""
 
 TIME_TELLS = "it would be cleared within seconds; a lasting reading rules it out"
 NEUTRAL_SOUND = "without displacement the readings cannot tell a sound neutral from a lost one under equal loads"
 
 LOST = "lost or loose neutral, source side of this board"
 FAULT = "short circuit from a line to neutral"
+UNEVEN = "lines uneven in the supply, neutral sound"
 WEAK = "one line weak or overloaded, neutral sound"
 
-SHIFTED_CAUSES = {
+SHIFTED_CAUSES: dict[tuple[str, Known], tuple[Cause, ...]] = {
     ("shifted", "lines even"): (
         Cause(LOST, "very likely", "the volts between lines are even: only N has moved"),
         Cause(FAULT, "unlikely", TIME_TELLS),
     ),
     ("shifted", "lines unknown"): (
         Cause(LOST, "likely", "all three fit one moved neutral and a usual source"),
-        Cause(
-            WEAK,
-            "less likely",
-            "even volts between lines rule it out",
-        ),
+        Cause(WEAK, "less likely", "even volts between lines rule it out"),
         Cause(FAULT, "unlikely", TIME_TELLS),
     ),
     ("shifted", "none high"): (
         Cause(WEAK, "possible", "no reading is high"),
         Cause(LOST, "possible", "even volts between lines prove it"),
+        Cause(FAULT, "unlikely", TIME_TELLS),
+    ),
+    ("shifted", "supply may"): (
+        Cause(LOST, "possible", "all three fit one moved neutral; even volts between lines would decide for it"),
+        Cause(UNEVEN, "possible", "a public supply may differ so much by line; uneven ones would decide for it"),
         Cause(FAULT, "unlikely", TIME_TELLS),
     ),
     ("slight", "lines even"): (
@@ -44,8 +51,8 @@ SHIFTED_CAUSES = {
         ),
     ),
 }
-SHIFTED_CAUSES["slight", "lines unknown"] = SHIFTED_CAUSES["slight", "lines even"]
-SHIFTED_CAUSES["slight", "none high"] = SHIFTED_CAUSES["slight", "lines even"]
+for _known in ("lines unknown", "none high", "supply may"):
+    SHIFTED_CAUSES["slight", _known] = SHIFTED_CAUSES["slight", "lines even"]
 
 CAUSES = {
     "dead": (Cause("no supply, or a tester that does not work", "very likely", "nothing to judge the neutral by"),),
@@ -78,6 +85,10 @@ CAUSES = {
 
 PROVE_TESTER = "Prove the tester before and after; stray volts fool an instrument that draws no current."
 MEASURE_LINES = "Measure the three volts between lines: even ones speak for the neutral, uneven ones for a line."
+LINES_DECIDE = (
+    "Measure the three volts between lines, they decide: even ones mean the neutral, then open the lines of this "
+    "board; uneven ones mean the supply."
+)
 KEEP_AWAY = "Keep off metalwork: where earth and neutral are joined it may be live, even with lines open."
 OPEN_LINES = "Open the lines of this board, equipment is at risk; then look for the break towards the source."
 CALL = "Call the network operator if the break may lie in the service or beyond it."
@@ -94,6 +105,8 @@ LINE_FIRST = (
     "Treat the neutral as unproved until the lines are back and even.",
     CALL,
 )
+UNDECIDED_FIRST = (KEEP_AWAY, LINES_DECIDE, PROVE_TESTER, LOAD_IT, CALL)
+"""A shift that the supply itself may bring, as long as the volts between lines are not known."""
 CHECK_FIRST = {
     "dead": (PROVE_TESTER, "Measure again on the supply side; until then treat every conductor, neutral too, as live."),
     "two lines low": LINE_FIRST,

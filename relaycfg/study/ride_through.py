@@ -32,6 +32,8 @@ class Runs:
     standing_name: str
     window_s: float
     shared: bool
+    every: bool = False
+    """One counter that runs only while all channels are picked up (a stage set to all phases)."""
 
 
 @dataclass(frozen=True)
@@ -92,7 +94,7 @@ def run_lengths(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: flo
     keeps it from dropping out. Same definition as the step-by-step machine (``relay.run``), which the tests hold it to.
     """
     picked = np.zeros((len(runs.names), len(pickup), runs.severity.shape[-1]), bool)
-    shape = picked.shape[:2] if runs.shared else picked.shape
+    shape = picked.shape[:2] if runs.shared or runs.every else picked.shape
     count, gap, tail, longest = np.zeros(shape), np.zeros(shape), np.zeros(shape), np.zeros(shape)
     for k in range(runs.severity.shape[1]):
         here = runs.severity[:, k, None, :]
@@ -100,7 +102,7 @@ def run_lengths(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: flo
         now = np.where(picked, here >= dropout[None, :, None], here >= pickup[None, :, None])
         picked = np.where(real, now, picked)
         seconds = runs.duration_s[:, k].reshape((-1,) + (1,) * (len(shape) - 1))
-        timing = picked.any(axis=-1) if runs.shared else picked
+        timing = picked.all(axis=-1) if runs.every else picked.any(axis=-1) if runs.shared else picked
         counted = np.where(timing, seconds, np.minimum(tail, seconds))
         reached = count + counted
         longest = np.maximum(longest, reached)
@@ -108,9 +110,9 @@ def run_lengths(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: flo
         count = np.where(gap > hold_s + GRAIN_S, 0.0, reached)
         tail = np.where(timing & (seconds > 0), runs.window_s, tail - counted)
     ends_up = picked & (runs.standing >= dropout)[None, :, None]
-    endless = ends_up.any(axis=-1)
+    endless = ends_up.all(axis=-1) if runs.every else ends_up.any(axis=-1)
     longest = np.maximum(longest, np.where(count > 0, count + tail, 0.0))
-    each = longest if runs.shared else longest.max(axis=-1)
+    each = longest if runs.shared or runs.every else longest.max(axis=-1)
     return np.where(endless, np.inf, each)
 
 

@@ -47,8 +47,7 @@ class Scenarios:
 
 def seen_places(site: Site, relay: Relay) -> tuple[str, ...]:
     """Break places upstream of the relay's own neutral tap: the only ones it can see."""
-    path = site.path(relay.measures_at)
-    return tuple(p for p in site.places if p == SOURCE or p in path)
+    return tuple(p for p in (SOURCE, *site.path(relay.measures_at)) if p in site.places)
 
 
 def all_scenarios(

@@ -10,7 +10,7 @@ from relaycfg.study.evidence import Evidence
 from relaycfg.study.stages import ActiveStage
 
 BEYOND = 1.1
-"""Timing is tested with the quantity 10 percent beyond the pickup."""
+"""Timing is tested with the quantity 10 percent beyond the pickup, and at least twice its error."""
 
 
 def test_schedule(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> tuple[TestPoint, ...]:
@@ -52,7 +52,11 @@ def _time_point(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveSta
     frequency = evidence.site.supply.frequency_hz
     measuring = window_s(device, frequency) + refresh_s(device, frequency) + evidence.relay.output_s
     timing = float(active.ladder.element.accuracy.time_error(stage.delay_s))
-    level = stage.pickup / BEYOND if stage.function is Function.UNDERVOLTAGE else stage.pickup * BEYOND
+    sure = 2 * float(active.ladder.element.accuracy.pickup_error(stage.pickup))
+    if stage.function is Function.UNDERVOLTAGE:
+        level = max(0.0, min(stage.pickup / BEYOND, stage.pickup - sure))
+    else:
+        level = max(stage.pickup * BEYOND, stage.pickup + sure)
     return TestPoint(
         stage.label,
         line,

@@ -90,6 +90,19 @@ def failed_cases(
     for case in cases:
         if case.passed:
             continue
+        if case.expect == "trip" and case.outcome == "trip":
+            first = case.operated[0]
+            found.append(
+                Finding(
+                    "exception",
+                    f"case {case.number}",
+                    f"case {case.number}, {case.name}: opened after {first.seconds:.2f} s ({first.stage}), too late: "
+                    f"{case.figures}",
+                    "shorten the delay or lower the pickup of a stage that sees it",
+                    "equipment stays on that voltage longer than it stands",
+                )
+            )
+            continue
         culprits = [f"{o.stage} after {o.seconds:.2f} s" for o in case.operated if o.stage not in insecure]
         if case.outcome == "hold":
             found.append(

@@ -21,6 +21,7 @@ from relaycfg.study.choice import (
     raise_margins,
 )
 from relaycfg.study.evidence import Evidence
+from relaycfg.study.joint import joint_core
 from relaycfg.study.ladder import Ladder
 
 INHIBIT_S = 0.5
@@ -37,10 +38,10 @@ class Settled:
 def settle(evidence: Evidence) -> Settled:
     """Choose every element's stages on the device's own steps.
 
-    59, 27 and 59N are each chosen for all states they can reach (redundancy), and must keep the core states that
-    the others do not clear with the full margin; then each stage's margin is raised as far as the core states that
-    now depend on it alone allow. A 59N stage left over becomes the detection stage. 47 is chosen last, with the full
-    margin, and only where it adds core states or more than 2 percent of all.
+    First the greatest core that 59, 27 and 59N can clear together; then each is chosen for all states it can reach
+    (redundancy), keeping the core that depends on it; then each stage's margin is raised as far as that allows. A 59N
+    stage left over becomes the detection stage. 47 is chosen last, with the full margin, and only where it adds core
+    states or more than 2 percent of all.
     """
     wanted = harmful_states(evidence.scenarios)
     chosen = _choose_each(evidence, wanted)
@@ -67,22 +68,21 @@ def settle(evidence: Evidence) -> Settled:
 
 
 def _choose_each(evidence: Evidence, wanted: tuple[BoolArray, ...]) -> dict[Function, tuple[Rung, ...]]:
+    """From the greatest joint core, each element in turn: its own cover, never losing core the others leave to it."""
     ladders = {f: evidence.ladders[f] for f in ORDER[:-1] if f in evidence.ladders}
-    own = {f: demand(ladder, evidence.scenarios, wanted) for f, ladder in ladders.items()}
-    robust = {
-        f: best_cover(ladder, own[f], own[f], ladder.element.stages, MARGIN_CAP_UNITS) for f, ladder in ladders.items()
-    }
-    chosen = {}
+    chosen = joint_core(ladders, evidence.scenarios, _core(evidence, wanted))
     for function, ladder in ladders.items():
         others = tuple(f for f in ladders if f is not function)
-        need = demand(ladder, evidence.scenarios, _core(evidence, _without(evidence, wanted, robust, others)))
-        chosen[function] = choose(ladder, own[function], need, ladder.element.stages)
+        own = demand(ladder, evidence.scenarios, wanted)
+        need = demand(ladder, evidence.scenarios, _core(evidence, _without(evidence, wanted, chosen, others)))
+        chosen[function] = choose(ladder, own, need, ladder.element.stages)
     return chosen
 
 
 def _raise_each(
     evidence: Evidence, wanted: tuple[BoolArray, ...], chosen: dict[Function, tuple[Rung, ...]]
 ) -> dict[Function, tuple[Rung, ...]]:
+    """Each element's margins once more, now that the others' stages are known."""
     raised = dict(chosen)
     for function in chosen:
         ladder = evidence.ladders[function]

@@ -1,6 +1,6 @@
 """Active stages as they act on one relay: both ends of their error bands, and when they clear a break state."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -51,6 +51,8 @@ def active_stages(evidence: Evidence, settings: Settings) -> tuple[ActiveStage, 
         ladder = evidence.ladders.get(stage.function)
         if not stage.on or ladder is None or stage.action == "alarm":
             continue
+        if stage.phases == "all":
+            ladder = replace(ladder, runs=replace(ladder.runs, every=True))
         clearing = float(ladder.clearing_of(np.array(stage.delay_s)))
         element = ladder.element
         found.append(

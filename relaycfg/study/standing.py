@@ -11,6 +11,9 @@ from relaycfg.study.levels import Healthy
 FOR_EVER = float("inf")
 ANGLE_STEPS = 24
 UNBALANCED_STATES = 16
+"""States of highest V0 in which the supply's unbalance is tried at every angle."""
+HIGHEST_DISPLACEMENT = "most displaced by"
+TINY_V = 1e-12
 
 
 def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
@@ -51,71 +54,47 @@ def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
     ]
 
 
-def third_harmonic_v0(site: Site, board: str) -> float:
-    """Standing RMS of third-harmonic V0 at ``board`` with every load connected [V].
-
-    Each load's third harmonic is taken in phase on all lines, so it returns through the neutral threefold:
-    V0 = I3 (Z_L + 3 Z_N) along the path, reactances at three times the frequency. Source: own arithmetic.
-    """
-    lines = len(site.supply.geometry.names)
-
-    def at_third(z: complex) -> complex:
-        return complex(z.real, 3 * z.imag)
-
-    def per_line(boards: tuple[str, ...]) -> float:
-        amperes = 0.0
-        for load in site.loads:
-            if load.board in boards and load.to_neutral:
-                rated = abs(complex(load.p_w, load.q_var)) / site.supply.nominal_v
-                amperes += rated * load.third_harmonic_percent / 100
-        return amperes / lines
-
-    everywhere = tuple(b.name for b in site.boards)
-    drop = per_line(everywhere) * (at_third(site.source.line_ohm) + 3 * at_third(site.source.neutral_ohm))
-    for name in site.path(board):
-        cable = site.board(name).cable
-        if cable is not None:
-            drop += per_line(site.behind(name)) * (at_third(cable.line_ohm) + 3 * at_third(cable.neutral_ohm))
-    return float(abs(drop))
-
-
 def _unbalanced(site: Site, healthy: Healthy, most_v: float) -> tuple[Course, ...]:
+    """Courses of highest displacement (V0, and N against PE) and of highest unbalance by each definition.
+
+    The supply's V2 is taken of each state's own V1 and tried at every angle, since the worst one depends on the state.
+    """
     geometry = site.supply.geometry
-    v0 = np.abs(_l_n(healthy.upper).mean(axis=-1))
-    state = int(np.argmax(v0))
-    moved = _displaced(site, healthy.upper[state])
-    courses = [_course(f"highest V0, state {healthy.names[state]}", _within(moved, most_v))]
-    # The worst angle of V2 depends on the state, so the most displaced states are tried at every angle.
+    names = healthy.names * 2
+    taps = _displaced(site, np.concatenate([healthy.upper, healthy.lower]))
+    v0 = np.abs(_l_n(taps).mean(axis=-1))
+    n_pe = np.nan_to_num(np.abs(taps[:, -1]))
+    courses = [
+        _course(f"{HIGHEST_DISPLACEMENT} {what}, state {names[k]}", _within(taps[k], most_v))
+        for what, k in (("V0", int(np.argmax(v0))), ("N-PE", int(np.argmax(n_pe))))
+    ]
     candidates = np.argsort(v0)[::-1][:UNBALANCED_STATES]
     turns = np.exp(2j * np.pi * np.arange(ANGLE_STEPS) / ANGLE_STEPS)
-    v2 = site.supply.unbalance_percent / 100 * site.supply.nominal_v * turns
-    negative = np.zeros((ANGLE_STEPS, len(geometry.names) + 1), complex)
-    negative[:, :-1] = v2[:, None] * geometry.phasors.conj()
-    for name in ("line-to-neutral deviation", "line-to-line deviation", "V2/V1", "spread"):
-        taps = np.stack([_displaced(site, healthy.upper[k]) for k in candidates])[:, None, :] + negative[None]
-        figures = measured_quantities(geometry, taps)["unbalance_percent"][name]
+    _, v1, _ = geometry.sequences(_l_n(taps[candidates]))
+    negative = np.zeros((len(candidates), ANGLE_STEPS, len(geometry.names) + 1), complex)
+    size = site.supply.unbalance_percent / 100 * np.abs(v1)
+    negative[..., :-1] = size[:, None, None] * turns[:, None] * geometry.phasors.conj()
+    tried = taps[candidates][:, None, :] + negative
+    for name, figures in measured_quantities(geometry, tried)["unbalance_percent"].items():
         k, angle = np.unravel_index(int(np.argmax(figures)), figures.shape)
-        label = f"highest {name}, state {healthy.names[candidates[k]]}"
-        courses.append(_course(label, _within(taps[k, angle], most_v)))
+        label = f"highest {name}, state {names[candidates[k]]}"
+        courses.append(_course(label, _within(tried[k, angle], most_v)))
     return tuple(courses)
 
 
-def _displaced(site: Site, tap: ComplexArray) -> ComplexArray:
-    """The tap with the supply's own displacement added where it makes V0 largest."""
-    lines = len(site.supply.geometry.names)
-    v0 = tap[:lines].mean()
-    direction = v0 / abs(v0) if abs(v0) > 0 else 1.0
-    moved = tap.copy()
-    moved[:lines] += direction * site.supply.displacement_percent / 100 * site.supply.nominal_v
-    return moved
+def _displaced(site: Site, taps: ComplexArray) -> ComplexArray:
+    """The taps [states, lines + 1] with the supply's own displacement added where it makes V0 largest.
 
-
-def with_harmonic(tap: ComplexArray, harmonic_v0: float) -> ComplexArray:
-    """The tap whose |V0| is the root sum of squares of its own and ``harmonic_v0`` (what an RMS device reads)."""
-    v0 = tap[..., :-1].mean()
-    direction = v0 / abs(v0) if abs(v0) > 0 else 1.0
-    moved = tap.copy()
-    moved[..., :-1] += direction * (np.hypot(abs(v0), harmonic_v0) - abs(v0))
+    It moves N against the local PE only where PE is an electrode of its own (TT).
+    """
+    v0 = _l_n(taps).mean(axis=-1, keepdims=True)
+    direction = np.where(np.abs(v0) > 0, v0 / np.maximum(np.abs(v0), TINY_V), 1.0)
+    added = direction * site.supply.displacement_percent / 100 * site.supply.nominal_v
+    moved = taps.copy()
+    moved[:, :-1] += added
+    if site.supply.earthing == "TT":
+        n_pe = moved[:, -1:]
+        moved[:, -1:] += np.abs(added) * np.where(np.abs(n_pe) > 0, n_pe / np.maximum(np.abs(n_pe), TINY_V), 1.0)
     return moved
 
 

@@ -126,7 +126,8 @@ def _plane(evidence: Evidence, active: tuple[ActiveStage, ...]) -> tuple[PlanePo
     for scenario in shown:
         operated = operating_s(active, scenario, evidence)
         missed = scenario.harmful & (operated > scenario.deadline_s)
-        for k in np.argsort(~missed, kind="stable")[:each]:
+        order = np.argsort(~missed, kind="stable")
+        for k in order[scenario.resolved[order]][:each]:
             harm: Harm = HARMS[int(scenario.high[k]) + 2 * int(scenario.low[k])]
             late = operated[k] > scenario.deadline_s[k]
             operation: Operation = "none" if not np.isfinite(operated[k]) else "late" if late else "in time"

@@ -6,7 +6,8 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from relaycfg.model.geometry import three_phase
-from relaycfg.study.reading import locate, read_meter
+from relaycfg.study import read_meter
+from relaycfg.study.reading import locate
 
 EVEN = (398.0, 398.0, 398.0)
 
@@ -85,6 +86,26 @@ def test_a_line_at_nothing_with_the_others_at_line_to_line_volts_is_a_lost_neutr
 def test_one_low_reading_without_a_high_one_may_be_a_weak_line():
     assert first((170, 230, 230)).name.startswith("one line weak")
     assert first((170, 230, 230), (347, 398, 347)).name.startswith("a line weak")
+
+
+def test_what_a_public_supply_may_do_is_only_possible_until_the_lines_are_measured():
+    reading = read_meter((207, 253, 253), None, 230.0)
+    assert [c.confidence for c in reading.causes[:2]] == ["possible", "possible"]
+    assert reading.causes[0].name.startswith("lost or loose neutral")
+    assert reading.causes[1].name == "lines uneven in the supply, neutral sound"
+    assert any("between lines, they decide" in step for step in reading.check_first)
+    sure = read_meter((207, 253, 253), (410.0, 410.0, 410.0), 230.0)
+    assert sure.causes[0].confidence == "very likely"
+    assert not any("between lines" in step for step in sure.check_first)
+
+
+@pytest.mark.parametrize("nominal_v", [120.0, 230.0])
+def test_beyond_what_a_supply_may_do_it_is_likely(nominal_v):
+    # displacement at angles a third of a turn apart: 18 V of 230 may be the supply, 24 V no longer
+    for shift, confidence in ((18, "possible"), (24, "likely")):
+        low = nominal_v * (1 - 2 * shift / 230)
+        high = nominal_v * (1 + shift / 230)
+        assert read_meter((low, high, high), None, nominal_v).causes[0].confidence == confidence
 
 
 def test_a_healthy_reading_without_load_proves_nothing():
