@@ -1,9 +1,11 @@
 """Commands, options and exit codes: the only place that prints, and the one that joins files, study, sheet and text."""
 
+import contextlib
 import json
 import os
 import re
 import sys
+import tomllib
 import traceback
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, NoReturn
@@ -12,7 +14,20 @@ import click
 
 from relaycfg import __version__
 from relaycfg.errors import InputError
-from relaycfg.options import EXAMPLE, FORCE, SITE, STATES, help_end, study_options, within
+from relaycfg.options import (
+    EXAMPLE,
+    FORCE,
+    LINES,
+    NOMINAL_V,
+    READ_V,
+    SITE,
+    a_path,
+    help_end,
+    load_state,
+    number,
+    study_options,
+    three_readings,
+)
 
 if TYPE_CHECKING:
     from relaycfg.model.results import Study
@@ -21,6 +36,18 @@ if TYPE_CHECKING:
 PROGRAM = f"relaycfg {__version__}"
 DONE, EXCEPTIONS, BAD_INPUT = 0, 1, 2
 INTERRUPTED, PIPE_CLOSED = 130, 141
+GIVE_OUTPUT = "the result goes to standard output, give a path for the file"
+GIVE_SETTINGS = "only a site is read from standard input, give the path of the settings"
+NO_OUTPUT = "standard output takes no more"
+STDIN = Path("/dev/stdin")
+"""The file that standard input comes from, where it comes from one and the system has such a path."""
+BYTE_ORDER_MARK = "\ufeff"
+FEW_SAMPLES = 200
+"""Below this the 95 % intervals of shares are wider than some 14 percent points."""
+PATIENCE_S = 10.0
+"""Longer than this asks for a word beforehand."""
+BREAK_S, STUDY_S = 0.0001, 0.001
+"""Seconds that one load state at one place takes, on a slow machine: breaks alone, and with settings."""
 
 
 @click.group(
@@ -31,7 +58,8 @@ INTERRUPTED, PIPE_CLOSED = 130, 141
 def program() -> None:
     """Settings of voltage relays that disconnect a board when its neutral is lost.
 
-    Exit: 0 done, 1 done with exceptions against the stated criteria, 2 bad usage or bad input and nothing written.
+    Exit: 0 done, 1 done with exceptions against the stated criteria, 2 bad usage or bad input and nothing written,
+    130 stopped by the keyboard, 141 the reader of the result has gone.
     """
 
 
@@ -39,11 +67,11 @@ def program() -> None:
 @click.argument("folder", metavar="DIR", type=click.Path(path_type=Path))
 @click.option(
     "--volts",
-    type=float,
-    callback=within(50, 400, "volts"),
+    type=number(*NOMINAL_V, "volts"),
+    metavar="V",
     default=230.0,
     show_default=True,
-    help="Nominal, line to neutral.",
+    help="Nominal volts, line to neutral, 50 to 600.",
 )
 @click.option(
     "--earthing",
@@ -58,8 +86,8 @@ def new(folder: Path, volts: float, earthing: str, loads: Path | None, force: bo
     """Write a starter site into DIR: commented site.toml, loads.csv and relay.toml."""
     from relaycfg.files import write_starter
 
-    for path in write_starter(folder, volts, earthing, loads, force):
-        click.echo(path)
+    paths = write_starter(folder, volts, earthing, loads, force)
+    show_written("\n".join(map(str, paths)))
     return DONE
 
 
@@ -68,12 +96,17 @@ def new(folder: Path, volts: float, earthing: str, loads: Path | None, force: bo
 @click.option("--at", "place", metavar="PLACE", help="One place only: a board, source (the star link) or none.")
 @click.option(
     "--joint-ohm",
-    type=float,
-    callback=within(1e-6, 1e6, "ohms"),
+    type=number(1e-6, 1e6, "ohms"),
+    metavar="R",
     help="A bad joint of so many ohms instead of an open neutral.",
 )
-@click.option("--state", type=click.Choice(STATES), help="One kind of load states only.")
-@click.option("--all", "everything", is_flag=True, help="Every state and board.")
+@click.option(
+    "--state",
+    metavar="STATE",
+    callback=load_state,
+    help='One kind of load states only: connected, least, corners or sample; "sample 17" shows that sampled state.',
+)
+@click.option("--all", "everything", is_flag=True, help="Every state and board, N-PE and unbalance at the relay.")
 @study_options
 def breaks(
     site: str,
@@ -87,13 +120,14 @@ def breaks(
     quiet: bool,
 ) -> int:
     """Show what a lost neutral does: every place it can break, every board, what the relay sees."""
-    found = open_site(site, quiet, need_relay=False)
+    found, _ = open_site(site, quiet, need_relay=False)
     from relaycfg.study import breaks as study_breaks
     from relaycfg.text import breaks_dict, breaks_text
 
     at = None if place is None else known_place(found, place)
     drawn = samples if state in (None, "sample") else 0
-    tell(quiet, f"computing every break with {drawn} drawn load states")
+    where = len(found.places) if at is None else 1
+    announce(quiet, "computing every break", drawn, where, BREAK_S)
     result = study_breaks(found, samples=samples, seed=seed, at=at, joint_ohm=joint_ohm, state=state)
     if form == "json":
         show_json(breaks_dict(result, PROGRAM, found.digest, seed, drawn))
@@ -111,42 +145,57 @@ def breaks(
     default="settings.toml",
     show_default=True,
     type=click.Path(path_type=Path),
+    callback=a_path(GIVE_OUTPUT),
     help="Where the settings go.",
 )
-@click.option("--explain", is_flag=True, help="The ride-through and withstand curves, with the case behind every step.")
+@click.option(
+    "--explain",
+    is_flag=True,
+    help="The ride-through and withstand curves with the case behind every step; in JSON the V0 plane too.",
+)
 @FORCE
 @study_options
 def derive(site: str, output: Path, explain: bool, force: bool, form: str, samples: int, seed: int, quiet: bool) -> int:
-    """Derive settings for a new installation, with bounds, reasons, margins and cases."""
-    found = open_site(site, quiet)
+    """Derive settings for a new installation, with bounds, reasons, margins and cases.
+
+    The path written comes last on standard output; with --format json on standard error, so that the JSON stays whole.
+    """
+    found, read = open_site(site, quiet or form == "text")
     from relaycfg.files import check_new, settings_text, write_new
     from relaycfg.study import derive as study_derive
     from relaycfg.text import curves_text, derive_text, settings_comments, study_dict
 
-    check_new(output, force)
-    tell(quiet, f"deriving over {samples} drawn load states")
+    check_new(output, force, read)
+    announce(quiet, "deriving", samples, len(found.places), STUDY_S)
     result = study_derive(found, samples, seed)
-    write_new(output, settings_text(result.settings, found, settings_comments(result)).encode(), force)
+    settings = settings_text(result.settings, found, settings_comments(result)).encode()
     if form == "json":
         show_json(study_dict(result, PROGRAM, explain))
     else:
         click.echo(derive_text(result) + (curves_text(result) if explain else ""), nl=False)
+    write_new(output, settings, force, read)
     return finish(result, output, form)
 
 
 @program.command(epilog=help_end(f"relaycfg check {EXAMPLE}/site.toml {EXAMPLE}/existing-settings.toml"))
 @SITE
-@click.argument("settings", default="settings.toml", metavar="[SETTINGS]", type=click.Path(path_type=Path))
+@click.argument(
+    "settings",
+    default="settings.toml",
+    metavar="[SETTINGS]",
+    type=click.Path(path_type=Path),
+    callback=a_path(GIVE_SETTINGS),
+)
 @study_options
 def check(site: str, settings: Path, form: str, samples: int, seed: int, quiet: bool) -> int:
     """Check existing settings against must-hold cases and neutral breaks."""
-    found = open_site(site, quiet)
+    found, _ = open_site(site, quiet or form == "text")
     from relaycfg.files import read_settings
     from relaycfg.study import check as study_check
     from relaycfg.text import check_text, study_dict
 
     existing = read_settings(settings, found)
-    tell(quiet, f"checking {settings} over {samples} drawn load states")
+    announce(quiet, f"checking {settings}", samples, len(found.places), STUDY_S)
     result = study_check(found, existing, samples, seed)
     if form == "json":
         show_json(study_dict(result, PROGRAM))
@@ -157,12 +206,19 @@ def check(site: str, settings: Path, form: str, samples: int, seed: int, quiet: 
 
 @program.command(epilog=help_end(f"relaycfg sheet {EXAMPLE}/site.toml -o sheet.pdf --force"))
 @SITE
-@click.argument("settings", required=False, metavar="[SETTINGS]", type=click.Path(path_type=Path))
+@click.argument(
+    "settings",
+    required=False,
+    metavar="[SETTINGS]",
+    type=click.Path(path_type=Path),
+    callback=a_path(GIVE_SETTINGS),
+)
 @click.option(
     "-o",
     "--output",
     metavar="PDF",
     type=click.Path(path_type=Path),
+    callback=a_path(GIVE_OUTPUT),
     help="Where the sheet goes; default <number>-<revision>.pdf.",
 )
 @FORCE
@@ -177,8 +233,11 @@ def sheet(
     seed: int,
     quiet: bool,
 ) -> int:
-    """Write the setting sheet as a PDF; the settings are derived where none are given."""
-    found = open_site(site, quiet)
+    """Write the setting sheet as a PDF; the settings are derived where none are given.
+
+    The path written comes last on standard output; with --format json on standard error, so that the JSON stays whole.
+    """
+    found, read = open_site(site, quiet)
     from relaycfg.files import check_new, read_settings, templates_dir, write_new
     from relaycfg.sheet import render
     from relaycfg.study import check as study_check
@@ -187,58 +246,89 @@ def sheet(
 
     path = output if output is not None else Path(sheet_name(found))
     existing = None if settings is None else read_settings(settings, found)
-    check_new(path, force)
-    tell(quiet, f"{'deriving' if existing is None else 'checking'} over {samples} drawn load states")
+    read = read if settings is None else (*read, settings)
+    check_new(path, force, read)
+    doing = "deriving" if existing is None else f"checking {settings}"
+    announce(quiet, doing, samples, len(found.places), STUDY_S)
     result = study_derive(found, samples, seed) if existing is None else study_check(found, existing, samples, seed)
     tell(quiet, "drawing the sheet")
-    write_new(path, render(result, templates_dir(), __version__), force)
+    pages = render(result, templates_dir(), __version__)
     if form == "json":
         show_json(study_dict(result, PROGRAM))
     else:
         click.echo(sheet_text(result), nl=False)
+    write_new(path, pages, force, read)
     return finish(result, path, form)
 
 
-@program.command(epilog=help_end("relaycfg reading 172 263 263"))
-@click.argument("l_n", nargs=3, type=float, callback=within(0, 1000, "volts"), metavar="V1 V2 V3")
+@program.command(
+    epilog=help_end("relaycfg reading 172 263 263"),
+    context_settings={"ignore_unknown_options": True},  # a reading of -5 is a wrong number, not an option
+)
+@click.argument("l_n", nargs=-1, type=number(*READ_V, "volts"), callback=three_readings, metavar="V1 V2 V3")
 @click.option(
     "--line-to-line",
     "l_l",
-    nargs=3,
-    type=float,
-    callback=within(0, 1000, "volts"),
+    nargs=len(LINES),
+    type=number(*READ_V, "volts"),
     metavar="V12 V23 V31",
     help="Volts between lines, read at the same time.",
 )
 @click.option(
     "--nominal",
-    type=float,
-    callback=within(50, 400, "volts"),
+    type=number(*NOMINAL_V, "volts"),
+    metavar="V",
     default=230.0,
     show_default=True,
-    help="Nominal volts, line to neutral.",
+    help="Nominal volts, line to neutral, 50 to 600.",
 )
 def reading(l_n: tuple[float, float, float], l_l: tuple[float, float, float] | None, nominal: float) -> int:
     """Say what a meter reading means: lost neutral, lost phase or supply; what to check first, what not to do."""
-    from relaycfg.study.reading import read_meter
+    from relaycfg.study import read_meter
     from relaycfg.text import reading_text
 
     click.echo(reading_text(read_meter(l_n, l_l, nominal)), nl=False)
     return DONE
 
 
-def open_site(site: str, quiet: bool, need_relay: bool = True) -> "Site":
-    """The site of a file, or of stdin for ``-``; its warnings go to stderr."""
+def open_site(site: str, quiet: bool, need_relay: bool = True) -> tuple["Site", tuple[Path, ...]]:
+    """The site of a file, or of stdin for ``-``, and the files read for it.
+
+    Its warnings go to stderr, where the result does not print them.
+    """
     from relaycfg.files import read_site
+    from relaycfg.files.text import decode
+    from relaycfg.files.text import read_bytes as bytes_of
 
     if site == "-":
-        text = sys.stdin.buffer.read().decode("utf-8", errors="surrogateescape")
+        text = standard_input()
         found = read_site(None, text=text, need_relay=need_relay)
+        read = (STDIN, *named_files(text.removeprefix(BYTE_ORDER_MARK), Path()))
     else:
-        found = read_site(Path(site), need_relay=need_relay)
+        path = Path(site)
+        found = read_site(path, need_relay=need_relay)
+        read = (path, *named_files(decode(bytes_of(path, site, ""), site), path.parent))
     for warning in found.warnings:
         tell(quiet, f"warning: {warning}")
-    return found
+    return found, read
+
+
+def named_files(text: str, folder: Path) -> tuple[Path, ...]:
+    """The loads and device files that a site (a sound one) names."""
+    tables = tomllib.loads(text)
+    names = [tables.get("loads", {}).get("file"), *(relay.get("device") for relay in tables.get("relay", []))]
+    return tuple(folder / name.strip() for name in names if name)
+
+
+def standard_input() -> str:
+    """All of stdin, as far as there is one."""
+    try:
+        data = sys.stdin.buffer.read() if sys.stdin is not None else None
+    except OSError as reason:
+        raise click.UsageError(f"standard input cannot be read ({why(reason)}); give the path of a site") from None
+    if data is None:
+        raise click.UsageError("standard input is closed; give the path of a site")
+    return data.decode("utf-8", errors="surrogateescape")
 
 
 def known_place(site: "Site", given: str) -> str:
@@ -262,7 +352,7 @@ def sheet_name(site: "Site") -> str:
 
 def finish(result: "Study", path: Path, form: str) -> int:
     """The path written, last: on stderr beside JSON, which stays whole on stdout."""
-    click.echo(path, err=form == "json")
+    show_written(str(path), err=form == "json")
     return EXCEPTIONS if result.exceptions else DONE
 
 
@@ -271,10 +361,43 @@ def show_json(result: dict[str, Any]) -> None:
     click.echo(json.dumps(result, ensure_ascii=False, indent=1, allow_nan=False))
 
 
+def show_written(paths: str, err: bool = False) -> None:
+    """Paths that are written by now, which is said where they cannot be shown."""
+    try:
+        click.echo(paths, err=err)
+    except BrokenPipeError:
+        raise
+    except OSError as reason:
+        if not err:
+            named = paths.replace("\n", ", ")
+            raise click.ClickException(f"{NO_OUTPUT} ({why(reason)}); written all the same: {named}") from None
+
+
+def announce(quiet: bool, doing: str, samples: int, places: int, seconds: float) -> None:
+    """What is about to be computed, on stderr; ``seconds`` are those of one load state at one place, roughly."""
+    over = f" with {samples} drawn load states" if samples else ""
+    at = f" at {places} place{'s' if places != 1 else ''}"
+    long = "; this takes a while, fewer --samples are faster" if samples * places * seconds > PATIENCE_S else ""
+    tell(quiet, f"{doing}{over}{at}{long}")
+    if 0 < samples < FEW_SAMPLES:
+        tell(quiet, f"note: shares of {samples} load states mean little; take {FEW_SAMPLES} or more")
+
+
 def tell(quiet: bool, message: str) -> None:
-    """A message on stderr."""
+    """A message on stderr; nobody stops where it is not taken."""
     if not quiet:
-        click.echo(f"relaycfg: {message}", err=True)
+        complain(f"relaycfg: {message}")
+
+
+def complain(message: str) -> None:
+    """A line on stderr."""
+    with contextlib.suppress(OSError):
+        click.echo(message, err=True)
+
+
+def why(reason: OSError) -> str:
+    """The system's reason in its own words."""
+    return (reason.strerror or "unknown reason").lower()
 
 
 def main(arguments: list[str] | None = None) -> NoReturn:
@@ -284,26 +407,30 @@ def main(arguments: list[str] | None = None) -> NoReturn:
 
 
 def _code(arguments: list[str] | None) -> int:
+    if sys.stdout is None:
+        complain("Error: standard output is closed; nothing is computed or written")
+        return BAD_INPUT
     try:
         code = program.main(arguments, prog_name="relaycfg", standalone_mode=False)
     except InputError as error:
-        click.echo(error.text(), err=True)
+        complain(error.text())
         return BAD_INPUT
     except click.ClickException as error:
-        error.show()
+        with contextlib.suppress(OSError):
+            error.show()
         return BAD_INPUT
     except (click.Abort, KeyboardInterrupt):
-        click.echo("stopped", err=True)
+        complain("stopped")
         return INTERRUPTED
     except SystemExit:  # how click ends when the reader of stdout has gone
         return PIPE_CLOSED
     except Exception as error:
         if os.environ.get("RELAYCFG_TRACEBACK"):
             traceback.print_exc()
+        if isinstance(error, OSError) and error.errno is not None and error.filename is None:  # a stream, not a file
+            complain(f"Error: {NO_OUTPUT} ({why(error)}); nothing is written")
+            return BAD_INPUT
         what = f"{type(error).__name__}: {error}".rstrip(": ")
-        click.echo(
-            f"{PROGRAM} met an error of its own ({what}); please report it with the command and the files used",
-            err=True,
-        )
+        complain(f"{PROGRAM} met an error of its own ({what}); please report it with the command and the files used")
         return BAD_INPUT
     return code if isinstance(code, int) else DONE

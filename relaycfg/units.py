@@ -13,6 +13,16 @@ def volts(value: float | None) -> str:
     return _decimals(value, 1)
 
 
+def whole_volts(value: float | None) -> str:
+    """Volts to whole volts, where several share a cell."""
+    return _decimals(value, 0)
+
+
+def degrees(value: float | None) -> str:
+    """An angle to whole degrees."""
+    return _decimals(value, 0)
+
+
 def amperes(value: float | None) -> str:
     """Amperes to one decimal."""
     return _decimals(value, 1)
@@ -38,6 +48,16 @@ def seconds(value: float | None) -> str:
     if value is not None and math.isinf(value):
         return FOR_EVER
     return _decimals(value, 3 if value is not None and abs(value) < FEW_SECONDS else 2)
+
+
+def parts(value: float | None) -> str:
+    """One part of a ratio such as 2.0 : 1.0 : 1.0, to one decimal."""
+    return _decimals(value, 1)
+
+
+def asymmetry(value: float | None) -> str:
+    """The k of loads k:1:1, to two decimals."""
+    return _decimals(value, 2)
 
 
 def ratio(value: float | None) -> str:

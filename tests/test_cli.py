@@ -14,11 +14,17 @@ import jsonschema
 import pytest
 
 import relaycfg.files
-from relaycfg import __version__, cli
+from relaycfg import __version__, cli, options
+from relaycfg.files import limits
 
 ROOT = Path(__file__).parent.parent
+README = (ROOT / "README.md").read_text("utf-8")
 COMMANDS = ["new", "breaks", "derive", "check", "sheet", "reading"]
+EXAMPLE_CODES = {"check": cli.EXCEPTIONS}
+"""Exit codes of the commands in the helps where they are not 0: the example's existing settings have exceptions."""
 FEW = ["--samples", "30"]
+UNNAMED = {"--output"}
+"""Options the README leaves to the helps: the long name of -o."""
 
 
 def run(capsys, *arguments):
@@ -52,6 +58,26 @@ def hasty_settings(site):
     return path
 
 
+def names_of(command):
+    """Long and short names of a command's options, but for --help."""
+    return {name for option in command.params for name in option.opts if name.startswith("-")}
+
+
+def test_the_readme_names_every_option_and_no_other():
+    usage = README.split("\n## How to use it\n")[1].split("\n## ")[0]
+    named = set(re.findall(r"(?<![\w-])--?[a-z][a-z-]*", usage))
+    known = {name for command in cli.program.commands.values() for name in names_of(command)}
+    assert named - known - {"--help", "--version"} == set()
+    assert known - named - UNNAMED == set()
+
+
+@pytest.mark.parametrize("name", COMMANDS)
+def test_the_row_of_a_command_in_the_readme_names_only_its_options(name):
+    row = re.search(rf"^\| `relaycfg {name} ([^|`]*(?:\|[^|`]*)*)` \|", README, re.MULTILINE)
+    assert row is not None
+    assert set(re.findall(r"(?<![\w-])--?[a-z][a-z-]*", row[1])) <= names_of(cli.program.commands[name])
+
+
 @pytest.mark.parametrize("arguments", [["--help"], *([c, "--help"] for c in COMMANDS)])
 def test_help_imports_no_heavy_library(arguments):
     code = (
@@ -74,7 +100,7 @@ def test_every_help_ends_with_a_command_that_runs(command, capsys, tmp_path, mon
     monkeypatch.chdir(tmp_path)
     few = FEW if example[1] not in ("new", "reading") else []
     code, out, err = run(capsys, *example[1:], *few)
-    assert code in (0, 1), err
+    assert code == EXAMPLE_CODES.get(example[1], cli.DONE), err
     assert out
 
 
@@ -82,10 +108,10 @@ def test_new_writes_a_site_on_which_the_other_commands_run(site, capsys):
     assert {"site.toml", "loads.csv", "relay.toml"} <= {p.name for p in site.iterdir()}
     assert run(capsys, "breaks", *FEW)[0] == 0
     code, out, _ = run(capsys, "derive", *FEW)
-    assert code in (0, 1)
-    assert out.splitlines()[-1] == "settings.toml"
-    assert run(capsys, "check", *FEW)[0] in (0, 1)
+    assert (code, out.splitlines()[-1]) == (0, "settings.toml")
+    assert run(capsys, "check", *FEW)[0] == 0
     code, out, _ = run(capsys, "sheet", "site.toml", "settings.toml", *FEW)
+    assert code == 0
     assert (site / out.splitlines()[-1]).read_bytes().startswith(b"%PDF")
 
 
@@ -112,6 +138,12 @@ def test_check_fails_settings_inside_the_band_with_exit_1(site, capsys):
     code, out, _ = run(capsys, "check", "site.toml", hasty_settings(site), *FEW)
     assert code == 1
     assert re.search(r"exceptions? found against the stated criteria", out)
+
+
+@pytest.mark.parametrize("command", ["derive", "sheet"])
+def test_the_help_says_where_the_path_goes(command, capsys):
+    out = " ".join(run(capsys, command, "--help")[1].split())
+    assert "with --format json on standard error, so that the JSON stays whole" in out
 
 
 def test_the_sheet_is_written_and_says_so_where_there_are_exceptions(site, capsys):
@@ -148,14 +180,16 @@ def test_the_sheet_has_a_plain_file_name(number, revision, name):
 def test_json_stays_whole_on_stdout_and_fits_the_published_schema(capsys):
     schema = json.loads(resources.files("relaycfg.text").joinpath("result.schema.json").read_text("utf-8"))
     code, out, err = run(capsys, "derive", "--format", "json", "--explain", "--quiet", *FEW)
-    assert code in (0, 1)
-    result = json.loads(out)
+    assert code == 0
+    result = json.loads(out, parse_constant=pytest.fail)
     jsonschema.validate(result, schema)
     assert (result["program"], result["samples"], result["seed"]) == (f"relaycfg {__version__}", 30, 1)
     assert err.splitlines() == ["settings.toml"]
-    for arguments in (["breaks", "--at", "source"], ["check"]):
-        code, out, _ = run(capsys, *arguments, "--format", "json", *FEW)
-        jsonschema.validate(json.loads(out), schema)
+    for arguments in (["breaks", "--at", "source"], ["check"], ["sheet", "-o", "mine.pdf"]):
+        code, out, err = run(capsys, *arguments, "--format", "json", *FEW)
+        assert code == 0
+        jsonschema.validate(json.loads(out, parse_constant=pytest.fail), schema)
+    assert err.splitlines()[-1] == "mine.pdf"
 
 
 @pytest.mark.usefixtures("site")
@@ -166,6 +200,25 @@ def test_breaks_can_be_narrowed_to_place_state_and_joint(capsys):
     result = json.loads(out)
     assert [(r["at"], r["state"], r["joint_ohm"]) for r in result["breaks"]] == [("source", "connected", 2.0)]
     assert (result["summary"], result["samples"]) == ([], 0)
+
+
+@pytest.mark.usefixtures("site")
+def test_a_sampled_state_is_shown_again_by_the_number_it_was_named_with(capsys):
+    narrow = ["--at", "source", "--format", "json", *FEW]
+    worst = json.loads(run(capsys, "breaks", *narrow)[1])["summary"][0]["worst"][0]
+    code, out, _ = run(capsys, "breaks", *narrow, "--state", f"sample {worst['index']}")
+    assert code == 0
+    (row,) = json.loads(out)["breaks"]
+    assert row["state"] == f"sample {worst['index']}"
+    line = ("L1", "L2", "L3").index(worst["line"])
+    assert row["boards"][worst["board"]]["l_n_v"][line] == pytest.approx(worst["volts"], abs=1e-6)
+
+
+@pytest.mark.parametrize("state", ["sample -1", "sample x", "sample 1000000", "sample17", "all"])
+def test_an_unknown_state_is_refused_with_the_known_ones(state, capsys):
+    code, out, err = run(capsys, "breaks", "--state", state)
+    assert (code, out) == (2, "")
+    assert 'is not one of connected, least, corners, sample, or a sampled state such as "sample 17"' in err
 
 
 @pytest.mark.usefixtures("site")
@@ -250,6 +303,162 @@ def test_bad_usage_is_exit_2_with_nothing_on_stdout(arguments, capsys):
     code, out, err = run(capsys, *arguments)
     assert (code, out) == (2, "")
     assert "Error:" in err
+
+
+@pytest.mark.parametrize(
+    ("arguments", "said"),
+    [
+        (["reading", "-5", "230", "230"], "-5 is outside 0 to 1500 volts"),
+        (["reading", "172,5", "230", "230"], "'172,5' has a decimal comma; write 172.5"),
+        (["reading", "x", "230", "230"], "'x' is no number"),
+        (["reading", "1", "2", "3", "--nought"], "'--nought' is no option of this command, and no number"),
+        (["reading", "1", "2"], "give 3 readings, line to neutral in order L1 L2 L3; 2 given"),
+        (["reading", "1", "2", "3", "4"], "give 3 readings, line to neutral in order L1 L2 L3; 4 given"),
+        (["reading", "1", "2", "3", "--nominal", "700"], "700 is outside 50 to 600 volts"),
+        (["reading", "1", "2", "3", "--line-to-line", "4", "-5", "6"], "-5 is outside 0 to 1500 volts"),
+        (["new", "there", "--volts", "49"], "49 is outside 50 to 600 volts"),
+        (["new", "there", "--volts", "nan"], "nan is outside 50 to 600 volts"),
+        (["breaks", "--samples", "x"], "'x' is no whole number; give 1 to 1000000"),
+        (["breaks", "--samples", "0"], "0 is not possible; give 1 to 1000000"),
+        (["breaks", "--seed", "-1"], "-1 is not possible; give 0 or more"),
+        (["breaks", "--joint-ohm", "0"], "0 is outside 1e-06 to 1e+06 ohms"),
+        (["derive", "-o", "-"], "'-' is no file; the result goes to standard output, give a path for the file"),
+        (["sheet", "-o", "-"], "'-' is no file; the result goes to standard output, give a path for the file"),
+        (["check", "site.toml", "-"], "'-' is no file; only a site is read from standard input"),
+        (["sheet", "site.toml", "-"], "'-' is no file; only a site is read from standard input"),
+    ],
+)
+def test_a_wrong_figure_or_path_is_said_in_words_of_the_trade(arguments, said, capsys, tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    code, out, err = run(capsys, *arguments)
+    assert (code, out) == (2, "")
+    assert said in " ".join(err.split())
+    assert "l_n" not in err
+    assert list(tmp_path.iterdir()) == []
+
+
+def test_nominal_volts_are_those_of_a_site_file_and_the_help_says_so(capsys, tmp_path):
+    assert options.NOMINAL_V == limits.NOMINAL_V
+    for command in ("new", "reading"):
+        assert "line to neutral, 50 to 600." in " ".join(run(capsys, command, "--help")[1].split())
+    assert run(capsys, "new", tmp_path / "high", "--volts", "600")[0] == 0
+
+
+def test_the_help_names_every_exit_code(capsys):
+    out = " ".join(run(capsys, "--help")[1].split())
+    for code in (cli.DONE, cli.EXCEPTIONS, cli.BAD_INPUT, cli.INTERRUPTED, cli.PIPE_CLOSED):
+        assert re.search(rf"[:,] {code} \w", out)
+
+
+def shell(command, site, **more):
+    """A command line of relaycfg run by a shell in the folder of a site."""
+    return subprocess.run(
+        f"{sys.executable} -m relaycfg {command}",
+        shell=True,
+        cwd=site,
+        env=os.environ | {"PYTHONPATH": str(ROOT)},
+        capture_output=True,
+        text=True,
+        check=False,
+        **more,
+    )
+
+
+needs_full = pytest.mark.skipif(not Path("/dev/full").exists(), reason="no /dev/full here")
+
+
+@needs_full
+@pytest.mark.parametrize(
+    "command", ["derive --quiet", "derive --quiet --format json", "sheet --quiet", "breaks --quiet", "--help"]
+)
+def test_where_the_result_finds_no_room_nothing_is_written(command, site):
+    before = sorted(site.iterdir())
+    few = "" if command == "--help" else " --samples 30"
+    done = shell(f"{command}{few} > /dev/full", site)
+    assert done.returncode == cli.BAD_INPUT
+    assert done.stderr == "Error: standard output takes no more (no space left on device); nothing is written\n"
+    assert sorted(site.iterdir()) == before
+
+
+@needs_full
+def test_what_is_written_before_the_path_is_refused_is_named(tmp_path):
+    done = shell("new there > /dev/full", tmp_path)
+    assert done.returncode == cli.BAD_INPUT
+    assert done.stderr.startswith(
+        "Error: standard output takes no more (no space left on device); written all the same: there/site.toml, "
+    )
+
+
+@needs_full
+def test_messages_that_find_no_room_stop_nothing(site):
+    done = shell("breaks --samples 30 2> /dev/full", site)
+    assert (done.returncode, done.stdout[:12]) == (cli.DONE, "Starter site")
+    assert shell("breaks --at Attic 2> /dev/full", site).returncode == cli.BAD_INPUT
+
+
+@pytest.mark.skipif(os.name != "posix", reason="needs a POSIX shell")
+def test_closed_streams_are_said(site):
+    done = shell("breaks - <&-", site)
+    assert done.returncode == cli.BAD_INPUT
+    assert "Error: standard input is closed; give the path of a site" in done.stderr
+    done = shell("derive >&-", site)
+    assert done.returncode == cli.BAD_INPUT
+    assert done.stderr == "Error: standard output is closed; nothing is computed or written\n"
+    assert not (site / "settings.toml").exists()
+
+
+@pytest.mark.parametrize("name", ["site.toml", "loads.csv", "relay.toml", "../board/relay.toml", "link.toml"])
+@pytest.mark.parametrize("command", ["derive", "sheet"])
+def test_an_input_is_never_written_over(command, name, site, capsys):
+    (site / "link.toml").symlink_to(site / "site.toml")
+    before = {path.name: path.read_bytes() for path in site.iterdir()}
+    code, out, err = run(capsys, command, "-o", name, "--force", "--quiet", *FEW)
+    assert (code, out) == (2, "")
+    assert f"{name}: one of the files read for it" in err
+    assert {path.name: path.read_bytes() for path in site.iterdir()} == before
+
+
+def test_the_settings_given_are_not_written_over_by_their_sheet(site, capsys):
+    path = hasty_settings(site)
+    before = path.read_bytes()
+    code, out, err = run(capsys, "sheet", "site.toml", path, "-o", path.name, "--force", *FEW)
+    assert (code, out) == (2, "")
+    assert "hasty.toml: one of the files read for it" in err
+    assert path.read_bytes() == before
+
+
+@pytest.mark.skipif(not Path("/dev/stdin").exists(), reason="standard input has no path here")
+@pytest.mark.parametrize("name", ["site.toml", "loads.csv", "relay.toml"])
+def test_a_site_from_standard_input_is_not_written_over_either(name, site):
+    before = (site / name).read_bytes()
+    done = shell(f"derive - -o {name} --force --quiet --samples 30 < site.toml", site)
+    assert (done.returncode, done.stdout) == (2, "")
+    assert "one of the files read for it" in done.stderr
+    assert (site / name).read_bytes() == before
+
+
+@pytest.mark.usefixtures("site")
+def test_shares_of_few_states_come_with_a_note(capsys):
+    note = "relaycfg: note: shares of 30 load states mean little; take 200 or more"
+    assert note in run(capsys, "breaks", *FEW)[2].splitlines()
+    assert "note:" not in run(capsys, "breaks", "--samples", "200")[2]
+    assert "note:" not in run(capsys, "breaks", "--state", "least", *FEW)[2]
+    assert run(capsys, "derive", "--quiet", *FEW)[2] == ""
+
+
+@pytest.mark.usefixtures("site")
+def test_the_first_message_says_how_much_there_is_to_do(capsys):
+    first = run(capsys, "breaks", *FEW)[2].splitlines()[0]
+    assert first == "relaycfg: computing every break with 30 drawn load states at 3 places"
+    assert run(capsys, "breaks", "--at", "source", *FEW)[2].splitlines()[0].endswith("states at 1 place")
+
+
+@pytest.mark.parametrize(("samples", "long"), [(2000, False), (1_000_000, True)])
+def test_a_long_study_asks_for_patience(samples, long, capsys):
+    cli.announce(False, "deriving", samples, 3, cli.STUDY_S)
+    said = capsys.readouterr().err
+    assert said.startswith(f"relaycfg: deriving with {samples} drawn load states at 3 places")
+    assert ("; this takes a while" in said) == long
 
 
 def test_reading_needs_no_site_file(tmp_path, monkeypatch, capsys):

@@ -57,9 +57,10 @@ def test_the_sheet_prints_the_figures_of_the_json_and_repeats_its_bytes(
     for stage in figures["settings"]["stages"]:
         if stage["on"]:
             row = next(
-                line for line in first.splitlines() if line.startswith(f"{stage['function']} {stage['number']} on ")
+                line for line in first.splitlines() if line.startswith(f"{stage['function']} {stage['stage']} on ")
             )
-            assert f"{stage['pickup']:.1f}" in row
+            pickup = stage["pickup_percent"] if stage["pickup_v"] is None else stage["pickup_v"]
+            assert f"{pickup:.1f}" in row
             assert f"{stage['delay_s']:.2f} s" in row or f"{stage['delay_s']:.3f} s" in row
             assert f"{stage['dropout_ratio']:.2f}" in row
     for case in figures["cases"]:
@@ -83,7 +84,7 @@ def test_the_flaws_of_the_existing_settings_are_found(capsys: pytest.CaptureFixt
     assert "253.0 V 0.1 s, trips in case" in insecure["sentence"]
     assert "turn U> from 253 to" in insecure["do"]
     blunt = next(f for f in exceptions if f["about"] == "break at source")
-    assert "core scenarios are not cleared in time" in blunt["sentence"]
+    assert "core scenarios not cleared in time" in blunt["sentence"]
     assert "turn U0> from 50 to" in blunt["do"]
     coil = next(f for f in exceptions if f["about"].startswith("trip coil"))
     assert "fed L1-N from the floating system" in coil["sentence"]

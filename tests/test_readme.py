@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 
 from relaycfg.cli import main
-from relaycfg.files import key_table
+from tests.readme_tables import rewritten
 
 TOP = Path(__file__).resolve().parent.parent
 README = (TOP / "README.md").read_text()
@@ -32,9 +32,8 @@ def test_each_of_the_two_commands_is_one_line(title: str) -> None:
     assert len(blocks(section(title))) == 1
 
 
-def test_the_key_table_is_made_from_the_forms() -> None:
-    printed = README.split("by relaycfg.files.key_table -->\n")[1].split("\n<!-- keys: end")[0]
-    assert printed.strip() == key_table().strip()
+def test_its_tables_are_made_from_the_forms() -> None:
+    assert rewritten(README) == README
 
 
 def test_the_main_command_writes_the_sheet_it_names(

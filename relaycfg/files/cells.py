@@ -2,13 +2,14 @@
 
 import csv
 import io
+import warnings
 import zipfile
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
 from relaycfg.errors import InputError, Problem
-from relaycfg.files.text import choose
+from relaycfg.files.text import Trace, choose
 
 MOST_ROWS = 20_000
 LARGEST_UNPACKED = 100_000_000
@@ -49,6 +50,7 @@ def is_formula(content: Any) -> bool:
 
 def csv_lines(text: str, shown: str) -> list[Line]:
     """Lines of a CSV text without blank ones and comments (# first)."""
+    text = text.replace("\r\n", "\n").replace("\r", "\n")
     raw = text.split("\n")
     lines: list[Line] = []
     reader = csv.reader(io.StringIO(text), skipinitialspace=True, strict=True)
@@ -57,10 +59,10 @@ def csv_lines(text: str, shown: str) -> list[Line]:
         for cells in reader:
             number, start = start, reader.line_num + 1
             if any(c.strip() for c in cells) and not cells[0].startswith("#"):
-                source = raw[number - 1].rstrip("\r")
-                lines.append((number, [c.strip() for c in cells], _csv_place(shown, number, source)))
+                lines.append((number, [c.strip() for c in cells], _csv_place(shown, number, raw[number - 1])))
     except csv.Error as reason:
-        said = f"not CSV ({reason})"
+        closed = "expected after" in str(reason)
+        said = f"not CSV ({'text behind a closing quote' if closed else 'a quote that is not closed'})"
         raise InputError([Problem(shown, reader.line_num, None, "", said, "", "correct the line")]) from None
     return lines
 
@@ -77,8 +79,11 @@ def _csv_place(shown: str, number: int, source: str) -> Callable[[int, str], Cel
     return place
 
 
-def sheet_lines(data: bytes, shown: str, sheet: str | None) -> list[Line]:
-    """Lines of a spreadsheet; formulas stay text that begins with an equals sign."""
+def sheet_lines(data: bytes, shown: str, sheet: str | None, trace: Trace | None = None) -> tuple[str, list[Line]]:
+    """Name and lines of a sheet; formulas stay text that begins with an equals sign.
+
+    ``trace``: where a site names the sheet, its key is what is wrong when there is none of that name.
+    """
     import openpyxl
 
     given = "not a readable .xlsx file"
@@ -87,10 +92,12 @@ def sheet_lines(data: bytes, shown: str, sheet: str | None) -> list[Line]:
         with zipfile.ZipFile(io.BytesIO(data)) as packed:
             if sum(entry.file_size for entry in packed.infolist()) > LARGEST_UNPACKED:
                 raise InputError([Problem(shown, None, None, "", "too large unpacked", "", "save it as CSV")])
-        book = openpyxl.load_workbook(io.BytesIO(data), read_only=True)
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore")  # parts that are not read, such as drop-down lists
+            book = openpyxl.load_workbook(io.BytesIO(data), read_only=True)
         if sheet is not None and sheet not in book.sheetnames:
-            given = f"without a sheet {sheet}"
-            raise InputError([Problem(shown, None, None, "", given, "", choose(sheet, book.sheetnames))])
+            said, remedy = f'"{sheet}", no sheet of {shown}', choose(sheet, book.sheetnames)
+            raise InputError([trace(said, remedy) if trace else Problem(shown, None, None, "sheet", said, "", remedy)])
         page = book[sheet] if sheet is not None else book.worksheets[0]
         title = str(page.title)
         lines: list[Line] = []
@@ -107,7 +114,7 @@ def sheet_lines(data: bytes, shown: str, sheet: str | None) -> list[Line]:
         raise
     except Exception:  # a damaged workbook raises whatever the part that meets it happens to raise
         raise broken from None
-    return lines
+    return title, lines
 
 
 def _sheet_place(shown: str, number: int, title: str) -> Callable[[int, str], Cell]:

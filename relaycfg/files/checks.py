@@ -14,7 +14,8 @@ from pydantic_core import ErrorDetails
 from relaycfg.errors import Problem
 from relaycfg.files.keys import Form
 from relaycfg.files.positions import Loc
-from relaycfg.files.text import TomlFile, choose, near
+from relaycfg.files.text import Overlong, TomlFile, choose, near
+from relaycfg.model.geometry import three_phase
 
 AForm = TypeVar("AForm", bound=Form)
 
@@ -24,7 +25,11 @@ def fill(form: type[AForm], data: Any, file: TomlFile, loc: Loc, problems: list[
     try:
         return form.model_validate(data)
     except ValidationError as reason:
-        for error in reason.errors(include_url=False):
+        errors = reason.errors(include_url=False)
+        meant = {(*e["loc"][:-1], _meant(form, e["loc"])) for e in errors if e["type"] == "extra_forbidden"}
+        for error in errors:
+            if error["type"] == "missing" and error["loc"] in meant:
+                continue
             given, remedy, allowed = explain(form, error)
             problems.append(file.problem((*loc, *error["loc"]), given, remedy, allowed))
         return None
@@ -35,10 +40,12 @@ def explain(form: type[Form], error: ErrorDetails) -> tuple[str, str, str]:
     loc = error["loc"]
     field = field_at(form, loc)
     if error["type"] == "extra_forbidden":
-        holder = model_at(form, loc[:-1])
-        known = [info.alias or name for name, info in holder.model_fields.items()] if holder else []
-        match = near(str(loc[-1]), known)
-        return "not a known key", f"did you mean {match}?" if match else f"keys here are {', '.join(known)}", ""
+        match = _meant(form, loc)
+        known = f"keys here are {', '.join(_keys_at(form, loc[:-1]))}"
+        return "not a known key", f"did you mean {match}?" if match else known, ""
+    if error["type"] in ("missing", "too_short") and _is_array(field):
+        article = "an" if str(loc[-1])[0] in "aeiou" else "a"
+        return "missing" if error["type"] == "missing" else "empty", f"write {article} [[{_table(loc)}]] table", ""
     if error["type"] == "missing":
         return "missing", f"give {asked(field)}", limits(field)
     if error["type"] == "reserved_name":
@@ -46,7 +53,8 @@ def explain(form: type[Form], error: ErrorDetails) -> tuple[str, str, str]:
     if error["type"] == "empty_name":
         return "empty", "give a name", ""
     if error["type"] == "control_character":
-        return f"{shown(error['input'])}, with a control character", "write plain text", ""
+        character = error.get("ctx", {}).get("character", "a control character")
+        return f"{shown(error['input'])}, with the control character {character}", "write plain text", ""
     if error["type"] == "too_long_text":
         return "too long", "write at most 200 characters", ""
     if error["type"] == "literal_error":
@@ -58,13 +66,33 @@ def explain(form: type[Form], error: ErrorDetails) -> tuple[str, str, str]:
     return shown(error["input"]), f"give {asked(field)}", limits(field)
 
 
+def _keys_at(form: type[Form], loc: Loc) -> list[str]:
+    holder = model_at(form, loc)
+    return [info.alias or name for name, info in holder.model_fields.items()] if holder else []
+
+
+def _meant(form: type[Form], loc: Loc) -> str | None:
+    """The key that was meant by the unknown one at ``loc``; None where none is near."""
+    return near(str(loc[-1]), _keys_at(form, loc[:-1]))
+
+
+def _table(loc: Loc) -> str:
+    return ".".join(step for step in loc if isinstance(step, str))
+
+
+def _is_array(field: FieldInfo | None) -> bool:
+    """Whether the key is an array of tables."""
+    return field is not None and typing.get_origin(field.annotation) is list and bool(_models(field.annotation))
+
+
 def _choice(given: Any, field: FieldInfo | None, loc: Loc) -> str:
     choices = [str(c) for c in literals(field.annotation if field else None)]
     if len(choices) == 1:
         return f"give {choices[0]}"
     if loc and loc[-1] == "between" and isinstance(given, str):
         turned = "-".join(reversed(given.split("-")))
-        return f'write "{turned}"' if turned in choices else f"lines are L1, L2, L3; give one of {', '.join(choices)}"
+        lines = ", ".join(three_phase().names)
+        return f'write "{turned}"' if turned in choices else f"lines are {lines}; give one of {', '.join(choices)}"
     return choose(str(given), choices)
 
 
@@ -74,13 +102,24 @@ def shown(value: Any) -> str:
         return "true" if value else "false"
     if isinstance(value, Mapping):
         return "a table"
+    if isinstance(value, Overlong):
+        return value.written
     if isinstance(value, float):
         return f"{value:g}" if float(f"{value:g}") == value else str(value)
     try:
-        text = json.dumps(value, ensure_ascii=False) if isinstance(value, (str, list)) else str(value)
-    except (TypeError, ValueError):
-        text = "a number that is too long" if isinstance(value, int) else "a list"
+        text = _listed(value) if isinstance(value, list) else _quoted(value) if isinstance(value, str) else str(value)
+    except ValueError:
+        text = "a number that is too long"
     return text if len(text) <= 60 else text[:57] + "..."
+
+
+def _listed(values: list[Any]) -> str:
+    return "[" + ", ".join(_listed(v) if isinstance(v, list) else shown(v) for v in values[:30]) + "]"
+
+
+def _quoted(text: str) -> str:
+    """Text in quotes, what does not print as its escape."""
+    return "".join(c if c.isprintable() else f"\\u{ord(c):04x}" for c in json.dumps(text, ensure_ascii=False))
 
 
 def asked(field: FieldInfo | None) -> str:

@@ -1,15 +1,17 @@
 """What only shows when tables of a site are held against each other: names, feeds, earthing, readings."""
 
-import math
-
 from relaycfg.files.draft import Draft, PlacedLoad
 from relaycfg.files.duty_checks import LATER, check_cases, check_equipment, check_motors_and_faults, check_relay
 from relaycfg.files.ledger import printed
+from relaycfg.files.limits import LINE_TO_LINE_NEAR
 from relaycfg.files.load_checks import check_loads
+from relaycfg.files.loads import is_workbook
 from relaycfg.files.name_checks import check_board, check_unique
 from relaycfg.files.site_form import CableForm
 from relaycfg.files.tables import Tables, names
 from relaycfg.files.text import choose
+from relaycfg.files.unused import SOURCE_KEYS, quoted, unused
+from relaycfg.model.geometry import three_phase
 from relaycfg.model.site import SOURCE
 
 OHM_KEYS = ("line_ohm", "neutral_ohm", "pe_ohm")
@@ -19,7 +21,9 @@ SECTION_KEYS = ("length_m", "line_mm2", "neutral_mm2", "pe_mm2", "metal", "tempe
 def cross_check(draft: Draft, loads: list[PlacedLoad], tables: Tables, need_relay: bool) -> None:
     """Adds to the draft every problem that takes more than one table to see."""
     _supply(draft, tables)
-    _source(draft)
+    _source(draft, tables)
+    if draft.loads_file is not None and draft.loads_file.sheet is not None and not is_workbook(draft.loads_file.file):
+        draft.add(("loads", "sheet"), "not used by a CSV file", "remove it, or give an .xlsx file")
     check_unique(draft, [((*e.loc, "name"), e.form.name) for e in draft.boards])
     _feeds(draft)
     _cables(draft)
@@ -31,11 +35,18 @@ def cross_check(draft: Draft, loads: list[PlacedLoad], tables: Tables, need_rela
     check_cases(draft)
 
 
+def meant_star_voltage(volts: float, tables: Tables) -> float | None:
+    """The line-to-neutral voltage that is meant where ``volts`` looks like one between lines, else None."""
+    star = star_voltage(volts / three_phase().line_to_line_ratio, tables)
+    return star if star_voltage(volts, tables) is None else None
+
+
 def star_voltage(volts: float, tables: Tables) -> float | None:
-    """The common line-to-neutral voltage near ``volts``, or None."""
+    """The common line-to-neutral voltage nearest to ``volts``; None where none is near."""
     near_percent = tables.row("default-star-voltage-tolerance").value
     common = tables.row("default-star-voltages").value
-    return next((float(v) for v in common if abs(volts / v - 1) <= near_percent / 100), None)
+    nearest = min(common, key=lambda v: abs(volts / v - 1))
+    return float(nearest) if abs(volts / nearest - 1) <= near_percent / 100 else None
 
 
 def _supply(draft: Draft, tables: Tables) -> None:
@@ -44,8 +55,8 @@ def _supply(draft: Draft, tables: Tables) -> None:
         return
     if supply.system != "3ph-4w":
         draft.add(("supply", "system"), f'"{supply.system}", {LATER}', 'write "3ph-4w"')
-    star = star_voltage(supply.nominal_v / math.sqrt(3), tables)
-    if star_voltage(supply.nominal_v, tables) is None and star is not None:
+    star = meant_star_voltage(supply.nominal_v, tables)
+    if star is not None:
         draft.add(
             ("supply", "nominal_v"),
             f"{supply.nominal_v:g}, which looks like a line-to-line voltage",
@@ -62,24 +73,30 @@ def _supply(draft: Draft, tables: Tables) -> None:
         check_board(draft, ("supply", "band_at"), supply.band_at, (SOURCE,))
 
 
-def _source(draft: Draft) -> None:
+def _source(draft: Draft, tables: Tables) -> None:
     if len(draft.sources) > 1:
         draft.add(draft.sources[1].loc, f"a second source, {LATER}", "keep one [[source]]")
     nominal = draft.supply.nominal_v if draft.supply else None
+    if nominal is not None:
+        nominal = meant_star_voltage(nominal, tables) or nominal
     for entry in draft.sources[:1]:
         form = entry.form
         needs = {"transformer": ("rating_kva",), "generator": ("rating_kva",), "impedance": ("line_ohm",)}[form.kind]
         for name in needs:
             if getattr(form, name) is None:
                 draft.add((*entry.loc, name), "missing", f'give it for kind = "{form.kind}"')
-        if form.no_load_v is not None and nominal is not None and not 0.8 <= form.no_load_v / nominal <= 1.25:
-            line = abs(form.no_load_v / nominal / math.sqrt(3) - 1) < 0.1
+        for name, kinds in unused(form, SOURCE_KEYS, form.kind):
+            remedy = f"remove it, or give kind = {quoted(kinds)}"
+            draft.add((*entry.loc, name), f'not used by kind = "{form.kind}"', remedy)
+        low, high = tables.row("default-no-load-range").value
+        if form.no_load_v is not None and nominal is not None and not low <= form.no_load_v / nominal <= high:
+            line = abs(form.no_load_v / nominal / three_phase().line_to_line_ratio - 1) < LINE_TO_LINE_NEAR
             looks = ", which looks like a line-to-line voltage" if line else ""
             draft.add(
                 (*entry.loc, "no_load_v"),
                 f"{form.no_load_v:g}{looks}",
                 "give volts from line to neutral",
-                f"{0.8 * nominal:g} to {1.25 * nominal:g}",
+                f"{low * nominal:g} to {high * nominal:g}",
             )
         if form.vector_group is not None and vector_family(form.vector_group) is None:
             draft.add((*entry.loc, "vector_group"), f'"{form.vector_group}"', "give one such as Dyn11, Yzn5 or Yyn0")
@@ -98,7 +115,7 @@ def vector_family(group: str) -> str | None:
 
 
 def _feeds(draft: Draft) -> None:
-    feeder = {e.form.name: e.form.fed_from for e in reversed(draft.boards)}
+    feeder = draft.feeders
     reported: set[str] = set()
     for entry in draft.boards:
         loc = (*entry.loc, "fed_from")
@@ -114,8 +131,6 @@ def _feeds(draft: Draft) -> None:
             loop = " from ".join([*chain, entry.form.name])
             remedy = 'feed one of them from "source" or another board'
             draft.add(loc, f'"{entry.form.fed_from}", a loop ({loop})', remedy)
-    if draft.boards and not any(e.form.fed_from == SOURCE for e in draft.boards) and not reported:
-        draft.add(("board",), 'without a board fed from "source"', 'write fed_from = "source" in the main board')
 
 
 def _cables(draft: Draft) -> None:
@@ -153,6 +168,6 @@ def _earthing(draft: Draft) -> None:
         for entry in linked:
             remedy = "remove it, or give another earthing"
             draft.add((*entry.loc, "neutral_earth_link"), "true in a TT system", remedy)
-    if draft.supply.earthing == "TN-C-S" and not linked and len(draft.boards) == len(draft.board_names):
+    if draft.supply.earthing == "TN-C-S" and not linked and len(draft.boards) == len(draft.raw_boards) > 0:
         remedy = "write neutral_earth_link = true in the board where the PEN ends"
         draft.add(("supply", "earthing"), '"TN-C-S" without a board that links N and PE', remedy)

@@ -15,7 +15,7 @@ class RangeForm(Form):
     step: float = key("step", ask="a number in the unit of the knob", gt=0, le=1000)
     unit: Literal["v", "percent"] = key("what the knob is marked in", default="v")
     base_v: float | None = key(
-        "volts that are 100 percent; required with unit percent except for 47", unit="V", ask="volts", gt=0, le=1000,
+        "volts that are 100 percent; required with unit percent, not for 47", unit="V", ask="volts", gt=0, le=1000,
         otherwise="none",
     )  # fmt: skip
 
@@ -32,7 +32,10 @@ class AccuracyForm(Form):
     """Declared errors."""
 
     pickup_percent: float = key("of the pickup setting", unit="%", ask="percent", default=0.0, ge=0, le=20)
-    pickup_v: float = key("absolute (59, 27, 59N)", unit="V", ask="volts", default=0.0, ge=0, le=50)
+    pickup_v: float | None = key(
+        "absolute (59, 27, 59N)", unit="V", ask="volts", ge=0, le=50,
+        otherwise="0; 59N from L-N channels: row displacement-from-l-n",
+    )  # fmt: skip
     pickup_points: float = key("absolute (47)", unit="%", ask="percent points", default=0.0, ge=0, le=20)
     time_percent: float = key("of the delay setting", unit="%", ask="percent", default=0.0, ge=0, le=50)
     time_s: float = key("absolute", unit="s", ask="seconds", default=0.0, ge=0, le=10)

@@ -48,28 +48,53 @@ class Draft:
     cases: list[Entry[CaseForm]] = field(default_factory=list)
     evidence: list[Entry[EvidenceForm]] = field(default_factory=list)
     table_loads: list[LoadRow] = field(default_factory=list)
+    meant: frozenset[str] = frozenset()
+    """Tables that stand in the file under a misspelt name."""
+
+    def __post_init__(self) -> None:
+        self.raw_boards = self._raw_boards()
+        names = [_text_at(b, "name") for b in self.raw_boards]
+        self.board_names = tuple(dict.fromkeys(n for n in names if n is not None))
+        """Names of all boards, those with faults elsewhere included."""
+        self.boards_known = bool(names) and len(self.board_names) == len(names)
+        """Whether every board has a name of its own, so that a name that is not among them is a mistake."""
+
+    def _raw_boards(self) -> tuple[Any, ...]:
+        """Boards as written, whether they hold on their own or not."""
+        boards = self.file.data.get("board")
+        return tuple(boards) if isinstance(boards, list) else ()
 
     @property
-    def board_names(self) -> tuple[str, ...]:
-        """Names of all boards, those with faults elsewhere included."""
-        boards = self.file.data.get("board")
-        listed = boards if isinstance(boards, list) else []
-        names = [b.get("name") for b in listed if isinstance(b, Mapping)]
-        return tuple(tidy(n) for n in names if isinstance(n, str))
+    def feeders(self) -> dict[str, str]:
+        """What feeds every board that says so, by its name; the first of two of one name."""
+        fed = [(_text_at(b, "name"), _text_at(b, "fed_from")) for b in reversed(self.raw_boards)]
+        return {name: feeder for name, feeder in fed if name is not None and feeder is not None}
+
+    def lacks(self, *tables: str) -> bool:
+        """Whether none of those tables is given, not even under a misspelt name."""
+        return not any(name in self.file.data or name in self.meant for name in tables)
+
+    def problem(self, loc: Loc, given: str, remedy: str, allowed: str = "") -> Problem:
+        """A problem at a place of the site file."""
+        return self.file.problem(loc, given, remedy, allowed)
 
     def add(self, loc: Loc, given: str, remedy: str, allowed: str = "") -> None:
-        """A problem at a place of the site file."""
-        self.problems.append(self.file.problem(loc, given, remedy, allowed))
+        """Notes a problem at a place of the site file."""
+        self.problems.append(self.problem(loc, given, remedy, allowed))
+
+
+def _text_at(table: Any, key: str) -> str | None:
+    value = table.get(key) if isinstance(table, Mapping) else None
+    return tidy(value) if isinstance(value, str) else None
 
 
 def draft_site(file: TomlFile, folder: Path) -> Draft:
     """Checks every table of the file, and the loads file it names."""
-    draft = Draft(file, folder, [])
     known = [info.alias or name for name, info in SiteForm.model_fields.items()]
-    for name in file.data:
-        if name not in known:
-            match = near(name, known)
-            draft.add((name,), "not a known table", f"did you mean {match}?" if match else choose(name, known))
+    unknown = {name: near(name, known) for name in file.data if name not in known}
+    draft = Draft(file, folder, [], meant=frozenset(match for match in unknown.values() if match))
+    for name, match in unknown.items():
+        draft.add((name,), "not a known table", f"did you mean {match}?" if match else choose(name, known))
     draft.document = _table(draft, "document", DocumentForm)
     draft.supply = _table(draft, "supply", SupplyForm, needed=True)
     draft.equipment = _table(draft, "equipment", EquipmentForm)
@@ -85,15 +110,17 @@ def draft_site(file: TomlFile, folder: Path) -> Draft:
     if "loads" in file.data:
         draft.loads_file = _table(draft, "loads", LoadsForm)
         if draft.loads_file is not None:
-            path = folder / draft.loads_file.file
-            draft.table_loads = read_loads(path, str(path), draft.loads_file.sheet, draft.problems)
+            named, sheet = draft.loads_file.file, draft.loads_file.sheet
+            path = folder / named
+            draft.table_loads = read_loads(path, str(path), sheet, draft.problems, (named, draft.problem))
     return draft
 
 
 def _table(draft: Draft, name: str, form: type[AForm], needed: bool = False) -> AForm | None:
     data: Any = draft.file.data.get(name)
     if data is None and needed:
-        draft.add((name,), "missing", f"write a [{name}] table")
+        if draft.lacks(name):
+            draft.add((name,), "missing", f"write a [{name}] table")
         return None
     if isinstance(data, list):
         draft.add((name,), "given more than once", f"write one [{name}] table")
@@ -104,7 +131,7 @@ def _table(draft: Draft, name: str, form: type[AForm], needed: bool = False) -> 
 def _array(draft: Draft, name: str, form: type[AForm], needed: bool = False) -> list[Entry[AForm]]:
     data: Any = draft.file.data.get(name)
     if data is None or data == []:
-        if needed:
+        if needed and name not in draft.meant:
             draft.add((name,), "missing", f"write a [[{name}]] table")
         return []
     if not isinstance(data, list):

@@ -23,7 +23,7 @@ def check_motors_and_faults(draft: Draft) -> None:
 
 def check_relay(draft: Draft, need_relay: bool) -> None:
     """One relay at known boards, its feeds with the range they work in."""
-    if need_relay and "relay" not in draft.file.data:
+    if need_relay and draft.lacks("relay"):
         draft.add(("relay",), "missing", "write a [[relay]] table with name, measures_at and device")
     if len(draft.relays) > 1:
         draft.add(draft.relays[1].loc, f"a second relay, {LATER}", "keep one [[relay]]")
@@ -68,6 +68,8 @@ def check_equipment(draft: Draft) -> None:
                   f"give volts, at most {form.points[0][0]:g}")  # fmt: skip
     if form.points_low and form.sustained_low_v is None:
         draft.add(("equipment", "sustained_low_v"), "missing", "give the volts that may stay for ever")
+    elif form.sustained_low_s is not None and form.sustained_low_v is None:
+        draft.add(("equipment", "sustained_low_s"), "not used without sustained_low_v", "give sustained_low_v too")
 
 
 def check_cases(draft: Draft) -> None:

@@ -8,6 +8,10 @@ from pydantic_core import PydanticCustomError
 
 RESERVED = ("source", "none")
 OHMS = "[r, x] in ohms"
+STEERING = ("Cc", "Cf", "Cs", "Zl", "Zp")
+"""Unicode categories of control characters, of those that set the direction of writing, and of line breaks."""
+JOINERS = "\u200c\u200d"
+"""They join letters of some scripts and are part of their spelling."""
 Pair = Annotated[list[float], Field(min_length=2, max_length=2)]
 
 
@@ -49,10 +53,15 @@ def key(
 
 
 def _plain(text: str) -> str:
-    """Text without blanks around it, composed; refuses control characters."""
+    """Text without blanks around it, composed; refuses characters that steer a terminal or hide in print."""
     text = unicodedata.normalize("NFC", text.strip())
-    if any(unicodedata.category(c) in ("Cc", "Cs", "Zl", "Zp") for c in text):
-        raise PydanticCustomError("control_character", "control character")
+    for character in text:
+        if unicodedata.category(character) in STEERING and character not in JOINERS:
+            code = f"U+{ord(character):04X}"
+            called = unicodedata.name(character, "").lower()
+            raise PydanticCustomError(
+                "control_character", "{character}", {"character": f"{code} {called}" if called else code}
+            )
     if len(text) > 200:
         raise PydanticCustomError("too_long_text", "too long")
     return text

@@ -1,6 +1,7 @@
 """The ledger of inputs: every figure a study rests on, how well it is known, and which ones are defaults."""
 
 from collections.abc import Iterable, Sequence
+from dataclasses import replace
 from typing import Any
 
 from relaycfg.files.positions import Loc
@@ -10,12 +11,20 @@ from relaycfg.files.text import near
 from relaycfg.model.site import Input, Tag
 
 
+def figure(value: float) -> str:
+    """A number without digits nobody can measure: two decimals from 1 on, four below, three digits of tiny ones."""
+    size = abs(value)
+    if size >= 1 or value == 0:
+        return f"{round(value, 2):.9g}"
+    return f"{round(value, 4):g}" if size >= 0.001 else f"{value:.3g}"
+
+
 def printed(value: Any) -> str:
     """A value as the ledger prints it."""
     if isinstance(value, bool):
         return "yes" if value else "no"
     if isinstance(value, (int, float)):
-        return f"{value:.6g}"
+        return figure(value)
     if isinstance(value, complex):
         return f"{value.real:.4g} {'-' if value.imag < 0 else '+'} j{abs(value.imag):.4g}"
     if isinstance(value, (list, tuple)):
@@ -30,9 +39,11 @@ class Ledger:
         self.tables = tables
         self.entries: list[Input] = []
 
-    def given(self, field: str, value: Any, unit: str = "", note: str = "", tag: Tag = "assumed") -> None:
-        """An input of the user's; assumed until evidence says better."""
-        self.entries.append(Input(field, printed(value), unit, tag, note))
+    def given(
+        self, field: str, value: Any, unit: str = "", note: str = "", tag: Tag = "assumed", status: str = ""
+    ) -> None:
+        """An input of the user's, assumed until evidence says better; ``status`` of the row where it names one."""
+        self.entries.append(Input(field, printed(value), unit, tag, note, status))
 
     def default(self, field: str, value: Any, unit: str, note: str, status: str) -> None:
         """An input the user left out, with the source of what stands in for it."""
@@ -67,7 +78,7 @@ class Ledger:
                 stray.append((loc, f'"{form.of}"', self._about_stray(form.of, given)))
             tags.update(dict.fromkeys(hit, form))
         entries = [
-            Input(e.field, e.value, e.unit, tags[e.field].tag, "; ".join(n for n in (tags[e.field].note, e.note) if n))
+            replace(e, tag=tags[e.field].tag, note="; ".join(n for n in (tags[e.field].note, e.note) if n))
             if e.tag != "default" and e.field in tags
             else e
             for e in self.entries

@@ -4,13 +4,14 @@ from collections import Counter
 
 from relaycfg.files.draft import Draft, PlacedLoad
 from relaycfg.files.ledger import printed
+from relaycfg.files.limits import BAND_HIGHEST_PU, ZIP_SUM_NEAR
 from relaycfg.files.tables import Tables, names
 from relaycfg.files.text import choose
 
 
 def check_loads(draft: Draft, loads: list[PlacedLoad]) -> None:
     """There are loads, each with a name, a known board, one reading and a law that holds together."""
-    if not any(name in draft.file.data for name in ("load", "loads", "motor")):
+    if draft.lacks("load", "loads", "motor"):
         draft.add(("load",), "missing", "give at least one [[load]] or a [loads] file")
     for name, number in Counter(load.name for load in loads).items():
         if number > 1:
@@ -19,7 +20,7 @@ def check_loads(draft: Draft, loads: list[PlacedLoad]) -> None:
     usage: dict[str, float] = {}
     for load in loads:
         form = load.form
-        if form.board not in draft.board_names:
+        if draft.boards_known and form.board not in draft.board_names:
             load.add(draft, "board", f'"{form.board}", an unknown board', choose(form.board, draft.board_names))
         readings = [n for n in ("kw", "current_a", "ohm") if getattr(form, n) is not None]
         if len(readings) != 1:
@@ -38,8 +39,8 @@ def _load_law(draft: Draft, load: PlacedLoad) -> None:
     if form.ohm is not None:
         if form.ohm[0] < 0 or form.ohm == [0, 0]:
             load.add(draft, "ohm", printed(form.ohm), "give a resistance of 0 or more and not both zero")
-        for name in ("pf", "kind", "zip_p", "zip_q", "band_pu"):
-            if getattr(form, name) is not None:
+        for name in ("pf", "reactive", "kind", "zip_p", "zip_q", "band_pu"):
+            if name in form.model_fields_set:
                 load.add(draft, name, "given beside ohm", "remove it: ohm is a constant impedance")
     if form.kind is not None:
         if form.zip_p is not None:
@@ -50,7 +51,7 @@ def _load_law(draft: Draft, load: PlacedLoad) -> None:
         load.add(draft, "zip_q", "given without zip_p", "give zip_p too")
     for name in ("zip_p", "zip_q"):
         shares = getattr(form, name)
-        if shares is not None and abs(sum(shares) - 1) > 0.02:
+        if shares is not None and abs(sum(shares) - 1) > ZIP_SUM_NEAR:
             load.add(draft, name, f"of sum {sum(shares):g}", "give [z, i, p] of sum 1")
-    if form.band_pu is not None and not 0 < form.band_pu[0] < 1 < form.band_pu[1] <= 3:
+    if form.band_pu is not None and not 0 < form.band_pu[0] < 1 < form.band_pu[1] <= BAND_HIGHEST_PU:
         load.add(draft, "band_pu", printed(form.band_pu), "give [low, high]", "0 < low < 1 < high")

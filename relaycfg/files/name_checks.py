@@ -17,9 +17,13 @@ def check_unique(draft: Draft, named: Iterable[tuple[Loc, str]]) -> None:
 
 
 def check_board(draft: Draft, loc: Loc, name: str, also: tuple[str, ...] = ()) -> bool:
-    """Whether a board of that name (or one of ``also``) exists; adds a problem where not."""
+    """Whether a board of that name (or one of ``also``) exists; adds a problem where not.
+
+    Where a board lacks a name of its own, that is the problem, and a name not found may be the one that it lacks.
+    """
     choices = (*also, *draft.board_names)
     if name in choices:
         return True
-    draft.add(loc, f'"{name}", an unknown board', choose(name, choices))
+    if draft.boards_known:
+        draft.add(loc, f'"{name}", an unknown board', choose(name, choices))
     return False

@@ -3,7 +3,10 @@
 from typing import Literal
 
 from relaycfg.files.keys import Form, Name, Pair, Text, key
+from relaycfg.model.geometry import three_phase
 
+LINES = len(three_phase().names)
+EACH_LINE = f"[{', '.join(three_phase().names)}]"
 FeedFrom = Literal["auxiliary", "L1-N", "L2-N", "L3-N", "L1-L2", "L2-L3", "L3-L1"]
 
 
@@ -49,7 +52,7 @@ class EquipmentForm(Form):
     overvoltage: Name | None = key("named curve", ask="the name of a curve", row="default-equipment")
     points: list[Pair] | None = key(
         "own steps instead: from these volts on, cleared within these seconds", unit="V, s",
-        ask="[[volts, seconds], ...] with rising volts", length=(1, 20), otherwise="of the named curve",
+        ask="[[V, s], ...] with rising volts", length=(1, 20), otherwise="of the named curve",
     )  # fmt: skip
     sustained_high_v: float | None = key(
         "what may stay for ever", unit="V", ask="volts", gt=0, le=1000, otherwise="of the curve, else the first point"
@@ -66,7 +69,7 @@ class EquipmentForm(Form):
         otherwise="seconds of the first low point, else 80 % of row iti-lower",
     )  # fmt: skip
     points_low: list[Pair] | None = key(
-        "own steps downwards", unit="V, s", ask="[[volts, seconds], ...] with falling volts", length=(1, 20),
+        "own steps downwards", unit="V, s", ask="[[V, s], ...] with falling volts", length=(1, 20),
         otherwise="none",
     )  # fmt: skip
 
@@ -86,9 +89,9 @@ class SegmentForm(Form):
     """A piece of a case."""
 
     duration_s: float = key("how long", unit="s", ask="seconds", gt=0, le=86400)
-    l_n_v: list[float] = key("line-to-neutral volts", unit="V", ask="[L1, L2, L3] in volts", length=3)
+    l_n_v: list[float] = key("line-to-neutral volts", unit="V", ask=f"{EACH_LINE} in volts", length=LINES)
     angle_deg: list[float] | None = key(
-        "their angles", unit="deg", ask="[L1, L2, L3] in degrees", length=3,
+        "their angles", unit="deg", ask=f"{EACH_LINE} in degrees", length=LINES,
         otherwise="those of the source, its neutral moved where the volts allow it",
     )  # fmt: skip
 

@@ -35,13 +35,13 @@ def resistance_20(section_mm2: float, metal: str, tables: Tables) -> tuple[float
     row = tables.row(f"iec-60228-class-2-{metal.lower()}")
     for section, ohm in row.points:
         if section == section_mm2:
-            return ohm, row.source
+            return ohm, row.cited
     resistivity = tables.row(f"resistivity-{metal.lower()}")
-    return 1000 * resistivity.value / section_mm2, f"{section_mm2:g} mm2 not in IEC 60228, {resistivity.source}"
+    return 1000 * resistivity.value / section_mm2, f"{section_mm2:g} mm2 not in IEC 60228, {resistivity.cited}"
 
 
 def warm(resistance: float, metal: str, temperature_c: float, tables: Tables) -> float:
-    """Resistance at a temperature from that at 20 C. Source: row temperature-law; coefficients as in the tables."""
+    """Resistance at a temperature from that at 20 C. Source: linear law; coefficients as in the tables."""
     row = tables.row("temperature-coefficient-cu" if metal == "Cu" else "temperature-coefficient-al-textbook")
     return float(resistance * (1 + row.value * (temperature_c - REFERENCE_C)))
 

@@ -5,13 +5,11 @@ import math
 
 from relaycfg.files.draft import Draft
 from relaycfg.files.ledger import Ledger, printed
+from relaycfg.files.limits import ANGLES_MATTER_PU, LEVEL_SPAN
 from relaycfg.files.relay_form import CaseForm, MustHoldForm, SegmentForm
-from relaycfg.files.tables import Row, Tables
+from relaycfg.files.tables import Row, Tables, is_50_hz
 from relaycfg.model.geometry import Geometry
 from relaycfg.model.site import SOURCE, Board, Fault, ReferenceCases, Supply, UserCase, UserSegment
-
-LEVEL_SPAN = (0.85, 1.15)
-"""EMF over nominal within which given volts count as a moved neutral and not as a dip."""
 
 
 def resolve_faults(draft: Draft, boards: tuple[Board, ...], supply: Supply, ledger: Ledger) -> tuple[Fault, ...]:
@@ -55,41 +53,61 @@ def final_clearing(earthing: str, nominal_v: float, tables: Tables) -> tuple[flo
     return float(row.value), row
 
 
-def resolve_reference(form: MustHoldForm, frequency_hz: float, ledger: Ledger) -> ReferenceCases:
+REFERENCE_DIPS = {
+    "public supply": "iec-61000-4-11-class-3",
+    "dips class 2": "iec-61000-4-11-class-2",
+    "dips class 3": "iec-61000-4-11-class-3",
+}
+"""Row of the dips of each set."""
+SWELL_SETS = ("public supply",)
+"""Sets that have our swells too."""
+
+
+def resolve_reference(form: MustHoldForm, supply: Supply, ledger: Ledger) -> ReferenceCases:
     """Dips and swells of the sets, in percent of nominal and seconds."""
-    tables = ledger.tables
+    tables, frequency_hz = ledger.tables, supply.frequency_hz
     dips: dict[tuple[float, float], tuple[float, float, str, str]] = {}
     swells: tuple[tuple[float, float, str, str], ...] = ()
-    if "sets" in form.model_fields_set:
-        ledger.given("must_hold.sets", form.sets)
-    else:
-        ledger.default("must_hold.sets", form.sets, "", "class 3 dips as quoted, swells from memory", "memory")
+    notes, statuses = [], []
     for name in form.sets:
-        row = tables.row("iec-61000-4-11-class-2" if name == "dips class 2" else "iec-61000-4-11-class-3")
+        row = tables.row(REFERENCE_DIPS[name])
         for percent, at_50, at_60 in row.points:
-            seconds = (at_50 if frequency_hz < 55 else at_60) / frequency_hz
+            seconds = (at_50 if is_50_hz(frequency_hz, tables) else at_60) / frequency_hz
             dips[percent, seconds] = (percent, seconds, row.source, row.status)
-        if name == "public supply":
-            swells = reference_swells(tables)
+        notes.append(f"dips of {row.source}")
+        statuses.append(row.status)
+        if name in SWELL_SETS:
+            swells = reference_swells(tables, supply.nominal_v)
+            notes.append(swells[-1][2])
+            statuses.extend(swell[3] for swell in swells)
+    note, status = "; ".join(notes), "memory" if "memory" in statuses else "".join(statuses[:1])
+    if "sets" in form.model_fields_set:
+        ledger.given("must_hold.sets", form.sets, "", note, status=status)
+    else:
+        ledger.default("must_hold.sets", form.sets, "", note, status)
     interruption = ledger.pick("must_hold.interruption_s", form.interruption_s, "default-interruption", "s")
     row = tables.row("default-interruption")
     source, status = (row.source, row.status) if form.interruption_s is None else ("site", "user")
     return ReferenceCases(tuple(dips.values()), swells, float(interruption), source, status)
 
 
-def reference_swells(tables: Tables) -> tuple[tuple[float, float, str, str], ...]:
+def reference_swells(tables: Tables, nominal_v: float) -> tuple[tuple[float, float, str, str], ...]:
     """Swells as the times for which household overvoltage devices must not act, in percent of their 230 V.
 
     Nobody publishes a set of swells to hold through; this one is ours, with figures of EN 50550 (from memory, the
-    275 V cell as quoted).
+    275 V cell as quoted). At another nominal voltage they are scaled, which is ours too.
     """
     row, seen = tables.row("household-overvoltage-hold-times"), tables.row("household-overvoltage-275")
     base = tables.row("default-equipment-nominal").value
+    scaled = "" if nominal_v == base else f", scaled by U0/{base:g}"
     swells = []
     for volts, seconds in row.points:
         quoted = (volts, seconds) == (seen.values["at_v"], seen.values["hold_s"])
         origin = seen if quoted else row
-        swells.append((100 * volts / base, seconds, f"our reference set: hold times of {origin.source}", origin.status))
+        status = "own" if scaled and quoted else origin.status
+        swells.append(
+            (100 * volts / base, seconds, f"our reference set: hold times of {origin.source}{scaled}", status)
+        )
     return tuple(swells)
 
 
@@ -109,7 +127,7 @@ def _phasors(segment: SegmentForm, supply: Supply, name: str, warnings: list[str
     span = [limit * supply.nominal_v for limit in LEVEL_SPAN]
     if moved is not None and span[0] <= moved[0] <= span[1]:
         return moved[1]
-    if max(segment.l_n_v) - min(segment.l_n_v) > 0.01 * supply.nominal_v:
+    if max(segment.l_n_v) - min(segment.l_n_v) > ANGLES_MATTER_PU * supply.nominal_v:
         warnings.append(
             f"Case {name}: {', '.join(f'{v:g}' for v in segment.l_n_v)} V do not fit a moved neutral behind sound "
             "line-to-line volts; the angles of the source are taken. Give angle_deg."

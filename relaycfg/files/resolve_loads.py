@@ -22,7 +22,7 @@ def lines_of(between: str, geometry: Geometry) -> tuple[tuple[int, ...], bool]:
 
 def own_voltage(lines: tuple[int, ...], to_neutral: bool, supply: Supply) -> float:
     """Nominal voltage of a load [V]: line to neutral for a star or one line, else between its lines."""
-    if to_neutral or len(lines) > 2:
+    if to_neutral or lines not in supply.geometry.pairs:
         return supply.nominal_v
     return supply.nominal_v * supply.geometry.line_to_line_ratio
 
@@ -90,7 +90,7 @@ class LoadResolver:
         self, form: LoadForm, name: str, lines: tuple[int, ...], to_neutral: bool, kind: Row | None
     ) -> tuple[complex, tuple[str, object, str]]:
         """P + jQ of one [VA], and the reading it was given by."""
-        phases = 3 if len(lines) > 2 else 1
+        phases = 1 if lines in self.supply.geometry.pairs else len(lines)
         volts = own_voltage(lines, to_neutral, self.supply)
         if form.ohm is not None:
             ohm = complex(*form.ohm)
@@ -125,7 +125,8 @@ class LoadResolver:
             value = row.values["pf"] if row.family == "load-kinds" else row.value
             unit = "%" if key.endswith("percent") else ""
             of_kind = f" of {row.name}" if row.family == "load-kinds" else ""
-            self.ledger.shared_default(f"load.*.{key}{of_kind}", value, unit, owners, row.source, row.status)
+            note = f"{row.source}: {row.content['note']}" if key == "third_harmonic_percent" else row.source
+            self.ledger.shared_default(f"load.*.{key}{of_kind}", value, unit, owners, note, row.status)
 
 
 def _to_one(shares: Iterable[float]) -> Three:

@@ -4,14 +4,14 @@ from relaycfg.files.device import resolve_device
 from relaycfg.files.device_form import DeviceForm
 from relaycfg.files.ledger import Ledger
 from relaycfg.files.relay_form import EquipmentForm, FeedForm, RelayForm
-from relaycfg.files.tables import Row
-from relaycfg.model.site import Equipment, Feed, Relay
+from relaycfg.files.tables import Row, Tables
+from relaycfg.model.site import Equipment, Feed, Relay, Supply
 
 Steps = tuple[tuple[float, float], ...]
 
 
-def resolve_relay(form: RelayForm, device: DeviceForm, ledger: Ledger) -> Relay:
-    """The relay; feeds without a range are not judged (0 V to 0 V on ``auxiliary``)."""
+def resolve_relay(form: RelayForm, device: DeviceForm, supply: Supply, ledger: Ledger, warnings: list[str]) -> Relay:
+    """The relay; feeds without a range are not judged."""
     at = f"relay.{form.name}."
     ledger.given(at + "measures_at", form.measures_at)
     if form.trips is None:
@@ -23,7 +23,7 @@ def resolve_relay(form: RelayForm, device: DeviceForm, ledger: Ledger) -> Relay:
         measures_at=form.measures_at,
         trips=form.trips or form.measures_at,
         poles=ledger.pick(at + "poles", form.poles, "default-relay-poles"),
-        device=resolve_device(device, at + "device.", ledger),
+        device=resolve_device(device, supply, at + "device.", ledger, warnings),
         supply=_feed(form.supply, at + "supply.", ledger),
         trip_coil_kind=ledger.pick(at + "trip_coil.kind", form.trip_coil.kind, "default-relay-trip-coil"),
         trip_coil=_feed(form.trip_coil, at + "trip_coil.", ledger),
@@ -50,9 +50,23 @@ def resolve_equipment(form: EquipmentForm, nominal_v: float, ledger: Ledger, war
         ledger.given(at + "points", form.points, "V, s")
         name, source, status, sustained = "own steps", "user", "user", high[0][0]
     else:
-        row = _curve(form, ledger)
-        high, sustained = _in_volts(row, nominal_v, ledger, warnings)
+        row = _curve(form, ledger.tables)
+        scale = _scale(row, nominal_v, ledger.tables)
+        high, sustained = _in_volts(row, nominal_v, scale)
         name, source, status = row.name, row.source, row.status
+        if scale != 1:
+            base = ledger.tables.row("default-equipment-nominal").value
+            source, status = f"{source}, scaled by U0/{base:g}", "memory" if status == "memory" else "own"
+            warnings.append(
+                f"Equipment: the {row.name} is given for {base:g} V; its volts are scaled to {nominal_v:g} V, "
+                "which no source states. Give [equipment] points of your own."
+            )
+        if form.overvoltage is not None:
+            ledger.given(at + "overvoltage", name, note=source, status=status)
+        else:
+            ledger.default(at + "overvoltage", name, "", source, status)
+        if scale != 1:
+            ledger.default(at + "scale", scale, "", f"volts of {name} scaled by U0/{base:g}", "own")
     if form.sustained_high_v is not None:
         ledger.given(at + "sustained_high_v", form.sustained_high_v, "V")
     else:
@@ -78,33 +92,26 @@ def resolve_equipment(form: EquipmentForm, nominal_v: float, ledger: Ledger, war
     )
 
 
-def _curve(form: EquipmentForm, ledger: Ledger) -> Row:
-    if form.overvoltage is not None:
-        row = ledger.tables.named("withstand-curves", form.overvoltage)
-        assert row is not None
-        ledger.given("equipment.overvoltage", row.name, note=row.source)
-        return row
-    row = ledger.tables.named("withstand-curves", ledger.tables.row("default-equipment").value)
+def _curve(form: EquipmentForm, tables: Tables) -> Row:
+    row = tables.named("withstand-curves", form.overvoltage or tables.row("default-equipment").value)
     assert row is not None
-    ledger.default("equipment.overvoltage", row.name, "", row.source, row.status)
     return row
 
 
-def _in_volts(row: Row, nominal_v: float, ledger: Ledger, warnings: list[str]) -> tuple[Steps, float]:
-    """Points of a curve and its sustained level in volts; curves in volts are scaled to distant nominal voltages."""
+def _scale(row: Row, nominal_v: float, tables: Tables) -> float:
+    """Factor for a curve in volts: 1 near the voltage it is made for, else nominal over that voltage."""
+    low, high = tables.row("default-equipment-nominal-range").value
+    if "sustained_percent" in row.content or low <= nominal_v <= high:
+        return 1.0
+    return float(nominal_v / tables.row("default-equipment-nominal").value)
+
+
+def _in_volts(row: Row, nominal_v: float, scale: float) -> tuple[Steps, float]:
+    """Points of a curve and its sustained level in volts, whether it is given in volts or in percent of nominal."""
     if "sustained_percent" in row.content:
         scale, sustained = nominal_v / 100, float(row.content["sustained_percent"])
     else:
-        low, high = ledger.tables.row("default-equipment-nominal-range").value
-        base = ledger.tables.row("default-equipment-nominal").value
-        scale, sustained = 1.0, float(row.content["sustained_v"])
-        if not low <= nominal_v <= high:
-            scale = nominal_v / base
-            warnings.append(
-                f"Equipment: the {row.name} is given for {base:g} V; its volts are scaled to {nominal_v:g} V, "
-                "which no source states. Give [equipment] points of your own."
-            )
-            ledger.default("equipment.scale", scale, "", f"volts of {row.name} times nominal_v / {base:g}", "own")
+        sustained = float(row.content["sustained_v"])
     steps = tuple(sorted((round(v * scale, 6), s) for v, s in row.points))
     return steps, round(sustained * scale, 6)
 

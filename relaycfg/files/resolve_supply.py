@@ -5,8 +5,8 @@ import math
 from relaycfg.files.cross_checks import vector_family
 from relaycfg.files.ledger import Ledger
 from relaycfg.files.site_form import SourceForm, SupplyForm
-from relaycfg.files.tables import Row, Tables
-from relaycfg.model.geometry import three_phase
+from relaycfg.files.tables import Row, Tables, is_50_hz
+from relaycfg.model.geometry import Geometry, three_phase
 from relaycfg.model.site import Source, Supply
 
 
@@ -17,7 +17,7 @@ def resolve_supply(form: SupplyForm, ledger: Ledger) -> Supply:
     ledger.given("supply.earthing", form.earthing)
     frequency = ledger.pick("supply.frequency_hz", form.frequency_hz, "default-supply-frequency", "Hz")
     order = ledger.pick("supply.phase_order", form.phase_order, "default-supply-phase-order")
-    low, high, name, source = _band(form, frequency, ledger)
+    low, high, name, source, status = _band(form, frequency, ledger)
     return Supply(
         geometry=three_phase(order),
         nominal_v=form.nominal_v,
@@ -27,6 +27,7 @@ def resolve_supply(form: SupplyForm, ledger: Ledger) -> Supply:
         high_v=form.nominal_v * (1 + high / 100),
         band_name=name,
         band_source=source,
+        band_status=status,
         band_at=ledger.pick("supply.band_at", form.band_at, "default-supply-band-at"),
         unbalance_percent=ledger.pick("supply.unbalance_percent", form.unbalance_percent, "en-50160-unbalance", "%"),
         displacement_percent=ledger.pick(
@@ -44,20 +45,21 @@ def band_percent(row: Row) -> tuple[float, float]:
     return float(low), float(high)
 
 
-def _band(form: SupplyForm, frequency: float, ledger: Ledger) -> tuple[float, float, str, str]:
+def _band(form: SupplyForm, frequency: float, ledger: Ledger) -> tuple[float, float, str, str, str]:
+    """Lower and upper limit in percent, name, source and status of the band."""
     if form.low_percent is not None and form.high_percent is not None:
         ledger.given("supply.low_percent", form.low_percent, "%")
         ledger.given("supply.high_percent", form.high_percent, "%")
-        return form.low_percent, form.high_percent, f"{form.low_percent:g} to +{form.high_percent:g} %", "user"
+        return form.low_percent, form.high_percent, f"{form.low_percent:g} to +{form.high_percent:g} %", "user", "user"
     if form.band is not None:
         row = ledger.tables.named("supply-bands", form.band)
         assert row is not None
-        ledger.given("supply.band", form.band, note=row.source)
+        ledger.given("supply.band", form.band, note=row.source, status=row.status)
     else:
-        choice = ledger.tables.row("default-band-50-hz" if frequency < 55 else "default-band-60-hz")
-        row = ledger.tables.row(choice.value)
-        ledger.default("supply.band", row.name, "", f"{row.source}; {choice.source}", row.status)
-    return (*band_percent(row), form.band or row.name, row.source)
+        slow = is_50_hz(frequency, ledger.tables)
+        row = ledger.tables.row(ledger.tables.row("default-band-50-hz" if slow else "default-band-60-hz").value)
+        ledger.default("supply.band", row.name, "", f"{row.source}; the choice is ours", row.status)
+    return (*band_percent(row), form.band or row.name, row.source, row.status)
 
 
 def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
@@ -70,7 +72,7 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
         ledger.default(at + "no_load_v", supply.nominal_v, "V", "taken as supply.nominal_v", "own")
     emf = form.no_load_v if form.no_load_v is not None else supply.nominal_v
     solve = {"transformer": _transformer, "generator": _generator, "impedance": _plain}[form.kind]
-    line, neutral = solve(form, emf * supply.geometry.line_to_line_ratio, at, ledger)
+    line, neutral = solve(form, emf, supply.geometry, at, ledger)
     steps = (0.0, 0.0, 0.0, "", "")
     if form.kind == "generator":
         steps = _steps(form, at, ledger)
@@ -94,7 +96,7 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
 def series_ohm(percent: float, rating_kva: float, line_to_line_v: float, x_over_r: float) -> complex:
     """Series impedance of a transformer or machine [ohm] on the side of ``line_to_line_v``.
 
-    Source: row impedance-law of the tables, own arithmetic. Valid for x_over_r above 0.
+    Source: Z = u U^2 / S with X/R, own arithmetic. Valid for x_over_r above 0.
     """
     ohm = percent / 100 * line_to_line_v**2 / (rating_kva * 1000)
     resistance = ohm / math.hypot(1, x_over_r)
@@ -115,7 +117,15 @@ def zero_sequence(line: complex, family: str, tables: Tables) -> tuple[complex, 
     return complex(line.real * resistance.value, line.imag * x_ratio), row.source, row.status
 
 
-def _transformer(form: SourceForm, line_to_line_v: float, at: str, ledger: Ledger) -> tuple[complex, complex]:
+def star_neutral_ohm(line: complex, zero: complex, geometry: Geometry) -> complex:
+    """Impedance from the star of the EMFs to the star point [ohm], of the sequence impedances Z1 and Z0.
+
+    Source: symmetrical components, Z0 = Z1 + n Z_N for n lines that share the neutral.
+    """
+    return (zero - line) / len(geometry.names)
+
+
+def _transformer(form: SourceForm, emf: float, geometry: Geometry, at: str, ledger: Ledger) -> tuple[complex, complex]:
     assert form.rating_kva is not None
     tables = ledger.tables
     ledger.given(at + "rating_kva", form.rating_kva, "kVA")
@@ -136,27 +146,29 @@ def _transformer(form: SourceForm, line_to_line_v: float, at: str, ledger: Ledge
         ledger.default(at + "x_over_r", x_over_r, "", note, row.status)
     else:
         ledger.given(at + "x_over_r", x_over_r)
-    line = series_ohm(percent, form.rating_kva, line_to_line_v, x_over_r)
-    group = ledger.pick(at + "vector_group", form.vector_group, "default-source-vector-group")
+    line = series_ohm(percent, form.rating_kva, emf * geometry.line_to_line_ratio, x_over_r)
     if form.zero_sequence_ratio is not None:
+        if form.vector_group is not None:
+            ledger.given(at + "vector_group", form.vector_group, note="zero_sequence_ratio goes first")
         ledger.given(at + "zero_sequence_ratio", form.zero_sequence_ratio)
         zero = line * form.zero_sequence_ratio
     else:
+        group = ledger.pick(at + "vector_group", form.vector_group, "default-source-vector-group")
         zero, source, status = zero_sequence(line, vector_family(group) or "dyn", tables)
         ledger.default(at + "zero_sequence_ratio", abs(zero / line), "", f"{group}: {source}", status)
-    return line, (zero - line) / 3
+    return line, star_neutral_ohm(line, zero, geometry)
 
 
-def _generator(form: SourceForm, line_to_line_v: float, at: str, ledger: Ledger) -> tuple[complex, complex]:
+def _generator(form: SourceForm, emf: float, geometry: Geometry, at: str, ledger: Ledger) -> tuple[complex, complex]:
     assert form.rating_kva is not None
     ledger.given(at + "rating_kva", form.rating_kva, "kVA")
     percent = ledger.pick(at + "reactance_percent", form.reactance_percent, "default-generator-reactance", "%")
     ratio = ledger.pick(at + "x_over_r", form.x_over_r, "default-generator-x-over-r")
-    reactance = percent / 100 * line_to_line_v**2 / (form.rating_kva * 1000)
+    reactance = percent / 100 * (emf * geometry.line_to_line_ratio) ** 2 / (form.rating_kva * 1000)
     return complex(reactance / ratio, reactance), _neutral(form, at, ledger)
 
 
-def _plain(form: SourceForm, _line_to_line_v: float, at: str, ledger: Ledger) -> tuple[complex, complex]:
+def _plain(form: SourceForm, _emf: float, _geometry: Geometry, at: str, ledger: Ledger) -> tuple[complex, complex]:
     assert form.line_ohm is not None
     line = complex(*form.line_ohm)
     ledger.given(at + "line_ohm", line, "ohm")
@@ -178,7 +190,7 @@ def _steps(form: SourceForm, at: str, ledger: Ledger) -> tuple[float, float, flo
     row = ledger.tables.named("generator", choice)
     assert row is not None
     if form.class_:
-        ledger.given(at + "class", form.class_, note=row.source)
+        ledger.given(at + "class", form.class_, note=row.source, status=row.status)
     else:
         ledger.default(at + "class", row.name, "", row.source, row.status)
     values = row.values

@@ -1,5 +1,6 @@
 """The keys of all files as a JSON Schema and as a table for people; both come from the forms."""
 
+import re
 import types
 import typing
 from typing import Any
@@ -96,11 +97,17 @@ def _type(field: FieldInfo) -> str:
         words = ", ".join(f"`{c}`" for c in choices)
         return f"list of {words}" if is_list else words
     if is_list:
-        return "list of numbers"
+        return f"`{_shape(field)}`"
     for kind, word in ((bool, "true or false"), (int, "whole number"), (float, "number"), (str, "text")):
         if kind in kinds:
             return word
     return "date"
+
+
+def _shape(field: FieldInfo) -> str:
+    """A list of numbers as people write it, such as [r, x]; taken from what the error sentences ask for."""
+    asked_for = re.match(r"\[.*\]", str(extras(field).get("ask", "")))
+    return asked_for[0] if asked_for else "[number, ...]"
 
 
 def _members(annotation: Any) -> list[Any]:
@@ -115,7 +122,7 @@ def _need(field: FieldInfo) -> str:
     extra = extras(field)
     if "row" in extra:
         row = shipped()[str(extra["row"])]
-        return f"{printed(row.value)}; {row.source}"
+        return f"{printed(row.value)}; {row.cited}"
     if "otherwise" in extra:
         return str(extra["otherwise"])
     if isinstance(field.default, (str, int, float, list)):

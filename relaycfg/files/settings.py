@@ -126,6 +126,8 @@ def _pickup(
         return form.pickup_percent or 0.0, None, None
     if form.pickup_v is not None and form.pickup_percent is not None:
         problems.append(file.problem((*loc, "pickup_percent"), "given beside pickup_v", "keep one of them"))
+    if form.pickup_v is not None and form.pickup_percent is None and form.base_v is not None:
+        problems.append(file.problem((*loc, "base_v"), "not used with pickup_v", "remove it, or give pickup_percent"))
     if form.pickup_v is not None:
         return form.pickup_v, None, None
     if form.pickup_percent is None:

@@ -13,6 +13,7 @@ from relaycfg.files.device import read_device
 from relaycfg.files.device_form import DeviceForm
 from relaycfg.files.draft import Draft, PlacedLoad, draft_site, placed_loads
 from relaycfg.files.ledger import Ledger
+from relaycfg.files.limits import CONNECTED_TIMES
 from relaycfg.files.relay_form import EquipmentForm, MustHoldForm
 from relaycfg.files.resolve_boards import resolve_board
 from relaycfg.files.resolve_cases import resolve_case, resolve_faults, resolve_reference
@@ -22,7 +23,7 @@ from relaycfg.files.resolve_supply import resolve_source, resolve_supply
 from relaycfg.files.site_form import DocumentForm, PersonForm
 from relaycfg.files.tables import Tables
 from relaycfg.files.text import TomlFile, decode, read_bytes
-from relaycfg.model.site import SOURCE, Document, Person, Site
+from relaycfg.model.site import SOURCE, Document, Equipment, Load, Motor, Person, Site, Supply
 
 
 def read_site(path: Path | None, *, text: str | None = None, need_relay: bool = False) -> Site:
@@ -45,7 +46,11 @@ def read_site(path: Path | None, *, text: str | None = None, need_relay: bool = 
     cross_check(draft, loads, tables, need_relay)
     device = None
     if draft.relays:
-        device = read_device(draft.folder / draft.relays[0].form.device, draft.problems)
+        relay = draft.relays[0]
+        key = (*relay.loc, "device")
+        device = read_device(
+            draft.folder, relay.form.device, draft.problems, lambda given, remedy: draft.problem(key, given, remedy)
+        )
     if draft.problems:
         raise InputError(_ordered(draft.problems, shown))
     site = _resolve(draft, loads, device, tables)
@@ -72,14 +77,18 @@ def _resolve(draft: Draft, loads: list[PlacedLoad], device: tuple[TomlFile, Devi
     faults = resolve_faults(draft, boards, supply, ledger)
     relay = None
     if device is not None:
-        relay = resolve_relay(draft.relays[0].form, device[1], ledger)
+        relay = resolve_relay(draft.relays[0].form, device[1], supply, ledger, warnings)
     equipment = resolve_equipment(draft.equipment or EquipmentForm(), supply.nominal_v, ledger, warnings)
-    reference = resolve_reference(draft.must_hold or MustHoldForm(), supply.frequency_hz, ledger)
+    reference = resolve_reference(draft.must_hold or MustHoldForm(), supply, ledger)
     cases = tuple(resolve_case(e.form, supply, ledger, warnings) for e in draft.cases)
     inputs, stray = ledger.tagged((e.loc, e.form) for e in draft.evidence)
     for loc, given, remedy in stray:
         draft.add((*loc, "of"), f"{given}, no given input", remedy)
     warnings.extend(_warnings(draft))
+    warnings.extend(_low_side(resolved_loads, equipment))
+    warnings.extend(_amounts(draft, loads, resolved_loads, motors))
+    if not _unbalances(resolved_loads, motors, supply):
+        warnings.append("Loads: the load list models no unbalance: nothing about a lost neutral is proved.")
     return Site(
         document=_document(draft.document or DocumentForm()),
         supply=supply,
@@ -139,6 +148,47 @@ def _warnings(draft: Draft) -> list[str]:
             at = relay.form.measures_at
             found.append(f"Relay {relay.form.name}: it measures at {at}, which {trips} does not feed.")
     return found
+
+
+def _low_side(loads: tuple[Load, ...], equipment: Equipment) -> list[str]:
+    """Loads that mind low volts and the volts they mind have an effect only together."""
+    minding = [load.name for load in loads if load.minds_low_v]
+    if minding and equipment.sustained_low_v is None:
+        return [f"Load {minding[0]}: minds_low_v has no effect without [equipment] sustained_low_v."]
+    if not minding and equipment.sustained_low_v is not None:
+        return ["Equipment: sustained_low_v has no effect, for no load states minds_low_v."]
+    return []
+
+
+def _amounts(draft: Draft, placed: list[PlacedLoad], loads: tuple[Load, ...], motors: tuple[Motor, ...]) -> list[str]:
+    """Loads that the source could not carry by far: most often watts given for kilowatts."""
+    rating = draft.sources[0].form.rating_kva
+    if rating is None:
+        return []
+    found = []
+    taken = sum(complex(load.p_w, load.q_var) for load in loads if load.p_w > 0) + sum(m.running_va for m in motors)
+    times = abs(taken) / 1000 / rating
+    if times > CONNECTED_TIMES:
+        found.append(f"Loads: the connected load is {times:.3g} times the rating of the source; kW written as W?")
+    single = [
+        (load.name, abs(complex(load.p_w, load.q_var)) / p.form.count) for load, p in zip(loads, placed, strict=True)
+    ]
+    single += [(motor.name, abs(motor.running_va)) for motor in motors]
+    above = [(name, va / 1000) for name, va in single if va / 1000 > rating]
+    if above:
+        name, kva = above[0]
+        others = f" So are {len(above) - 1} more." if len(above) > 2 else " So is one more." if len(above) == 2 else ""
+        found.append(
+            f"Load {name}: its {kva:.4g} kVA is above the {rating:g} kVA of the source; kW written as W?{others}"
+        )
+    return found
+
+
+def _unbalances(loads: tuple[Load, ...], motors: tuple[Motor, ...], supply: Supply) -> bool:
+    """Whether anything that is ever on lies between the neutral and some, not all, of the lines."""
+    takers: tuple[Load | Motor, ...] = (*loads, *motors)
+    every = len(supply.geometry.names)
+    return any(x.to_neutral and len(x.lines) < every and x.usage > 0 for x in takers)
 
 
 def _digest(draft: Draft, loads: list[PlacedLoad], device: TomlFile | None, tables: Tables) -> str:

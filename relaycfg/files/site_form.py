@@ -4,6 +4,7 @@ import datetime
 from typing import Literal
 
 from relaycfg.files.keys import OHMS, Form, Name, OwnName, Pair, Text, key
+from relaycfg.files.limits import NOMINAL_V
 from relaycfg.files.load_form import FaultForm, LoadForm, LoadsForm, MotorForm
 from relaycfg.files.relay_form import CaseForm, EquipmentForm, MustHoldForm, RelayForm
 
@@ -39,7 +40,11 @@ class SupplyForm(Form):
 
     system: Literal["3ph-4w", "1ph-3w", "2ph-3w"] = key("kind of system; only 3ph-4w yet", default="3ph-4w")
     nominal_v: float = key(
-        "nominal voltage, line to neutral", unit="V", ask="volts from line to neutral", ge=50, le=600
+        "nominal voltage, line to neutral",
+        unit="V",
+        ask="volts from line to neutral",
+        ge=NOMINAL_V[0],
+        le=NOMINAL_V[1],
     )
     frequency_hz: float | None = key(
         "nominal frequency", unit="Hz", ask="hertz", ge=40, le=70, row="default-supply-frequency"

@@ -1,24 +1,42 @@
 """A starter site: commented files on which every other command runs at once."""
 
 import json
+import math
+import os
 from pathlib import Path
 from typing import Any
 
 from relaycfg.errors import InputError, Problem
-from relaycfg.files.cross_checks import cross_check, star_voltage
+from relaycfg.files.cross_checks import cross_check, meant_star_voltage
+from relaycfg.files.device import displacement_share
 from relaycfg.files.draft import draft_site, placed_loads
-from relaycfg.files.loads import read_loads
+from relaycfg.files.limits import NOMINAL_V
+from relaycfg.files.loads import is_workbook, read_loads
 from relaycfg.files.places import templates_dir
 from relaycfg.files.schema import site_schema
 from relaycfg.files.tables import Tables
 from relaycfg.files.text import TomlFile
 from relaycfg.files.writing import check_new, write_new
+from relaycfg.model.geometry import three_phase
 
 SCHEMA = "site.schema.json"
 BASE_V = 230.0
 """Voltage for which the figures of the templates are written."""
 MAIN, SECOND = "MB", "Workshop"
 CYCLES_60 = (120.0, 127.0, 277.0)
+"""Star voltages that are usual at 60 Hz only; every other starter is one of 50 Hz."""
+NO_LOAD_PU = 1.02
+"""A tap set a little high, as is usual."""
+OVER_PU, UNDER_PU = (1.0, 1.8), (0.3, 1.0)
+"""Knobs of 59 from nominal to just above the line-to-line voltage, of 27 from deep dips up to nominal."""
+SHIFT_PU = (0.02, 0.6)
+"""Knob of 59N from the standing displacement to a neutral that stands on a line, nearly."""
+FEED_PU = (1.3, 2.0)
+"""Range of a relay fed between lines: a fifth to a quarter around the line-to-line voltage."""
+SUSTAINED_LOW_PU = 0.8
+"""What motors are usually said to stand for long."""
+CHANNEL_PERCENT = 1.0
+"""Pickup error of the invented device."""
 
 
 def write_starter(
@@ -40,32 +58,44 @@ def write_starter(
     texts[loads_name] = loads or _render("loads.csv.j2", figures)
     texts["relay.toml"] = _render("relay.toml.j2", figures)
     texts[SCHEMA] = (json.dumps(site_schema(), indent=1) + "\n").encode()
-    if folder.exists() and not folder.is_dir():
-        raise _bad(str(folder), "a file", "give a new folder")
-    if folder.is_dir():
-        there = [name for name in texts if (folder / name).exists()]
-        if there and not force:
-            raise _bad(str(folder), f"a folder that holds {', '.join(there)}", "give a new folder, or add --force")
     try:
+        written = _to_write(folder, tuple(texts), loads_name if loads_file is not None else "", loads_file, force)
         folder.mkdir(parents=True, exist_ok=True)
+    except FileExistsError:
+        raise _bad(str(folder), "a file", "give a new folder") from None
     except OSError as reason:
         raise _bad(str(folder), f"not to be made ({(reason.strerror or '').lower()})", "give another folder") from None
-    for name in texts:
-        check_new(folder / name, force)
-    for name, data in texts.items():
-        write_new(folder / name, data, force)
+    except ValueError:
+        raise _bad(str(folder), "not a usable path", "give another folder") from None
+    for name in written:
+        write_new(folder / name, texts[name], force)
     return tuple(folder / name for name in texts)
+
+
+def _to_write(folder: Path, names: tuple[str, ...], own: str, loads_file: Path | None, force: bool) -> tuple[str, ...]:
+    """Names of the files to write, after a look at what is there; own loads that lie in place already are left."""
+    if not folder.is_dir():
+        return names
+    if loads_file is not None and (folder / own).exists() and (folder / own).samefile(loads_file):
+        names = tuple(name for name in names if name != own)
+    there = [name for name in names if os.path.lexists(folder / name)]
+    if there and not force:
+        raise _bad(str(folder), f"a folder that holds {', '.join(there)}", "give a new folder, or add --force")
+    for name in names:
+        check_new(folder / name, force, () if loads_file is None else (loads_file,))
+    return names
 
 
 def _check(volts: float, earthing: str) -> None:
     if earthing not in ("TN-S", "TN-C-S", "TT"):
         raise _bad("--earthing", f'"{earthing}"', "give TN-S, TN-C-S or TT")
-    star = star_voltage(volts / 3**0.5, Tables())
-    if star is not None and star_voltage(volts, Tables()) is None:
+    star = meant_star_voltage(volts, Tables())
+    if star is not None:
         looks = f"{volts:g}, which looks like a line-to-line voltage"
         raise _bad("--volts", looks, f"give volts from line to neutral, {star:g}")
-    if not 50 <= volts <= 600:
-        raise _bad("--volts", f"{volts:g}", "give volts from line to neutral, 50 to 600")
+    low, high = NOMINAL_V
+    if not low <= volts <= high:
+        raise _bad("--volts", f"{volts:g}", f"give volts from line to neutral, {low:g} to {high:g}")
 
 
 def _own_loads(path: Path) -> tuple[list[str], str, bytes]:
@@ -74,7 +104,7 @@ def _own_loads(path: Path) -> tuple[list[str], str, bytes]:
     if problems:
         raise InputError(problems)
     names = list(dict.fromkeys(row.form.board for row in rows))
-    suffix = path.suffix.lower() if path.suffix.lower() in (".xlsx", ".xlsm") else ".csv"
+    suffix = path.suffix.lower() if is_workbook(path.name) else ".csv"
     return [MAIN, *(n for n in names if n != MAIN)], f"loads{suffix}", path.read_bytes()
 
 
@@ -92,20 +122,26 @@ def _figures(volts: float, earthing: str) -> dict[str, Any]:
     scale = volts / BASE_V
     low, high = Tables().row("default-equipment-nominal-range").value
     curve = Tables().row("household-overvoltage-break-times")
+    line_to_line = volts * three_phase().line_to_line_ratio
+    shift_error = displacement_share(three_phase()) * CHANNEL_PERCENT / 100 * volts
     return {
         "volts": volts,
+        "line_to_line": round(line_to_line),
         "earthing": earthing,
         "scale": scale,
         "frequency": 60 if volts in CYCLES_60 else 50,
         "named_band": volts == BASE_V,
-        "no_load": round(1.02 * volts, 1),
+        "no_load": round(NO_LOAD_PU * volts, 1),
         "named_curve": low <= volts <= high,
         "points": [[round(v * scale), s] for v, s in curve.points],
         "sustained": round(curve.content["sustained_v"] * scale, 1),
-        "high": (round(volts), round(1.8 * volts)),
-        "low": (round(0.3 * volts), round(volts)),
-        "shift": (round(0.04 * volts) / 2, round(1.2 * volts) / 2),
-        "coil": (round(1.3 * volts), round(2 * volts)),
+        "sustained_low": round(SUSTAINED_LOW_PU * volts),
+        "high": [round(pu * volts) for pu in OVER_PU],
+        "low": [round(pu * volts) for pu in UNDER_PU],
+        "shift": [round(2 * pu * volts) / 2 for pu in SHIFT_PU],
+        "coil": [round(pu * volts) for pu in FEED_PU],
+        "channel_percent": f"{CHANNEL_PERCENT:g}",
+        "shift_error": math.ceil(10 * shift_error) / 10,
     }
 
 

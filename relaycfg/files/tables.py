@@ -1,5 +1,6 @@
 """Published values: rows with a source and a status, found by id or by the name a user may write."""
 
+import re
 import tomllib
 import unicodedata
 from collections.abc import Callable, Mapping
@@ -12,6 +13,9 @@ from typing import Any
 from relaycfg.files.places import tables_dir
 
 STATUSES = ("read", "quoted", "memory", "own")
+ENDINGS = {"read": "read", "quoted": "as quoted", "memory": "from memory, verify", "own": "ours"}
+"""How a status reads behind its source."""
+CLAUSE_FROM_MEMORY = re.compile(r" \([^()]*from memory\)$")
 
 
 class TableError(ValueError):
@@ -43,12 +47,20 @@ class Row:
 
     @property
     def source(self) -> str:
-        """Source and clause as printed, ending in how it is known."""
+        """Source and clause, for print beside the status.
+
+        A clause known from memory only is left out where the value itself was seen: one text says one thing.
+        """
         clause, named = str(self.content["clause"]), str(self.content["source"])
-        clause = clause.removesuffix(" (from memory)") if self.status == "memory" else clause
-        place = "" if clause in ("none", "not known") or named.endswith(clause) else f", {clause}"
-        ending = {"read": "read", "quoted": "as quoted", "memory": "from memory, verify", "own": "ours"}[self.status]
-        return f"{named}{place} ({ending})"
+        known = CLAUSE_FROM_MEMORY.sub("", clause)
+        if clause in ("none", "not known") or (known != clause and self.status != "memory"):
+            return named
+        return named if named.endswith(known) else f"{named}, {known}"
+
+    @property
+    def cited(self) -> str:
+        """Source and how it is known in one, for print where no status stands beside."""
+        return f"{self.source}, {ENDINGS[self.status]}"
 
     @property
     def value(self) -> Any:
@@ -72,6 +84,8 @@ def load_rows(folder: Path) -> dict[str, Row]:
     rows: dict[str, Row] = {}
     for path in sorted(folder.glob("*.toml")):
         table = tomllib.loads(path.read_text(encoding="utf-8"))
+        if not table.get("family") or not table.get("row"):
+            raise TableError(f"{path.name}: lacks a family or rows")
         for content in table["row"]:
             row = Row(str(content.get("id", "")), str(table["family"]), MappingProxyType(content))
             lacking = [k for k in ("id", "unit", "applies_to", "source", "clause", "status") if not content.get(k)]
@@ -120,3 +134,8 @@ def names(family: str, keep: Callable[[Row], bool] = lambda _: True) -> tuple[st
 def is_high_curve(row: Row) -> bool:
     """Whether a withstand curve tells of overvoltage: a sustained level above nominal stands in it."""
     return "sustained_v" in row.content or row.content.get("sustained_percent", 0) > 100
+
+
+def is_50_hz(frequency_hz: float, tables: Tables) -> bool:
+    """Whether a frequency is that of a 50 Hz system rather than of a 60 Hz one."""
+    return bool(frequency_hz < tables.row("default-frequency-split").value)

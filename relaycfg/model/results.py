@@ -190,7 +190,7 @@ class StageResult:
     bounds: tuple[Bound, ...]
     margins: Margins | None
     clears_percent: float | None
-    """Share of the harmful scenarios (place x state x level x load model) that it clears in time on its own."""
+    """Share of the harmful load states at nominal supply, places seen, that it clears in time on its own."""
     reason: str
 
 

@@ -64,6 +64,7 @@ class Supply:
     high_v: float
     band_name: str
     band_source: str
+    band_status: str
     band_at: str
     unbalance_percent: float
     displacement_percent: float

@@ -17,6 +17,8 @@ from relaycfg.network.sweeps import Iterate, Problem
 
 BLOCK = 64_000
 """Branches times states solved at once: what stays in a core's own cache."""
+LEAST_BLOCK = 1024
+"""States solved at once however many the branches: each block moves its middle into the network once."""
 SAME_ROOT_V = 0.1
 FAR_START = 0.8
 ACTS = 1e-9
@@ -101,7 +103,7 @@ class Network:
     def _sweep(self, run: "_Run", states: LoadStates, all_impedance: bool, start: complex) -> None:
         """All states block by block, then those that still move, pooled over the blocks."""
         count = states.count
-        block = max(1, BLOCK // max(len(run.order), 1))
+        block = max(LEAST_BLOCK, BLOCK // max(len(run.order), 1))
         left: list[NDArray[np.intp]] = []
         moving: list[Iterate] = []
         for first in range(0, count, block):

@@ -6,27 +6,28 @@ from markupsafe import Markup
 from reportlab.platypus import KeepInFrame
 
 from relaycfg.model.device import Function
-from relaycfg.model.results import StageResult
+from relaycfg.model.results import StageResult, Study
 from relaycfg.sheet import figures
 from relaycfg.sheet.ink import Flow, Ink
-from relaycfg.sheet.settings_table import off, on, reset
+from relaycfg.sheet.settings_table import measured, off, on, reset
+
+_FRAME, _INSET = 4.5, 10.0
+
+
+def held_back(study: Study) -> bool:
+    """Whether the figures are no order to set: existing settings as found, or any with exceptions."""
+    return study.kind == "check" or study.exceptions > 0
 
 
 def card(ink: Ink) -> Flow:
-    """One page, always."""
+    """One page, always; figures that are not to be set stand in a heavy frame under a title that says so."""
     study, wording = ink.study, ink.wording
-    relay = study.site.relay
+    context = {"study": study, "relay": study.site.relay, "device": study.device, "held": held_back(study)}
     functions = list(dict.fromkeys(r.stage.function for r in on(study)))
-    off_labels = off(study)
-    rows = [_row(ink, result) for result in on(study)]
-    middle = [("VALIGN", (0, 1), (-1, -1), "MIDDLE")]
     page = [
-        *ink.heading("card")[1:],
-        ink.say("card.lead", "big", relay=relay, device=study.device, document=study.site.document),
-        *ink.table(wording.lines("card.heads"), rows, (15, 22, 23, 14, 10, 16), "llrrrl", "cardcell", extra=middle),
+        *ink.heading("card", text=wording.text("card.title", **context))[1:],
+        *_figures(ink, context),
         ink.gap(3),
-        ink.say("card.off", "big", off=", ".join(off_labels)) if off_labels else ink.gap(0),
-        ink.gap(2),
         *_wiring(ink),
         ink.gap(4),
         ink.say("card.meaning_title", "big"),
@@ -42,21 +43,54 @@ def card(ink: Ink) -> Flow:
     return [KeepInFrame(ink.width, ink.height - 1, page, mode="shrink")]
 
 
+def _figures(ink: Ink, context: dict[str, Any]) -> Flow:
+    """The lead, the stages that are on and the list of those that are off."""
+    study, held = ink.study, context["held"]
+    width = ink.width - 2 * _INSET if held else ink.width
+    rows = [_row(ink, result) for result in on(study)]
+    heads = ink.wording.lines("card.heads", **context)
+    middle = [("VALIGN", (0, 1), (-1, -1), "MIDDLE")]
+    off_labels = off(study)
+    content = [
+        ink.say("card.lead", "big", **context),
+        *ink.table(heads, rows, (13, 15, 36, 13, 10, 13), "lllrrl", "cardcell", width, middle),
+        ink.gap(3),
+        *([ink.say("card.off", "big", off=", ".join(off_labels), **context)] if off_labels else []),
+    ]
+    return [ink.framed(content, _FRAME, _INSET)] if held else content
+
+
 def _row(ink: Ink, result: StageResult) -> list[Any]:
     stage = result.stage
     element = ink.study.device.element(stage.function)
     knob = " · ".join(t for t in (element.knob, element.terminal) if t) if element else ""
     name = Markup("<b>{} / {}</b>").format(stage.function.value, stage.number)
-    if stage.action == "alarm":
-        name += ink.wording.text("card.alarm")
+    figure = _figure(figures.dial(result.marked), result.marked_unit)
     return [
-        _large(ink, name, "l"),
+        [_large(ink, name, "l"), ink.p(ink.wording.text(f"card.{stage.action}"), "below")],
         knob or figures.ABSENT,
-        _large(ink, _figure(figures.dial(result.marked), result.marked_unit), "r"),
+        [_large(ink, figure, "l"), ink.p(_below(ink, result), "below")],
         _large(ink, _figure(figures.seconds(stage.delay_s), "s"), "r"),
         figures.ratio(stage.dropout_ratio),
         reset(result),
     ]
+
+
+def _below(ink: Ink, result: StageResult) -> Markup:
+    """What stands below the figure on the device's own scale: its base, the volts, and of which lines it speaks."""
+    stage, study = result.stage, ink.study
+    element = study.device.element(stage.function)
+    nominal = study.site.supply.nominal_v
+    of_base = element is not None and element.unit == "percent" and stage.function is not Function.UNBALANCE
+    base = element.base_v if element is not None and element.base_v is not None else nominal
+    return ink.wording.text(
+        "card.below",
+        base=(base if of_base else None),
+        to_neutral=abs(base - nominal) < 1e-6,
+        volts=stage.pickup,
+        quantity=measured(result, study),
+        lines=stage.phases if stage.function in (Function.OVERVOLTAGE, Function.UNDERVOLTAGE) else "",
+    )
 
 
 def _figure(figure: str, unit: str) -> Markup:
@@ -70,13 +104,15 @@ def _large(ink: Ink, text: Markup, align: str) -> Any:
 
 def _wiring(ink: Ink) -> Flow:
     study = ink.study
-    context: dict[str, Any] = {"relay": study.site.relay, "settings": study.settings, "device": study.device}
+    relay = study.site.relay
+    pen = relay is not None and relay.poles == "lines and neutral" and study.site.conductor(relay.trips) == "PEN"
+    context: dict[str, Any] = {"relay": relay, "settings": study.settings, "device": study.device, "pen": pen}
     rows = [
         [Markup("<b>{}</b>").format(name), ink.wording.text(f"card.wiring_texts.{key}", **context)]
         for key, name in ink.wording.pairs("card.wiring")
-        if context["relay"] is not None or key == "inhibit"
+        if relay is not None or key == "inhibit"
     ]
-    return ink.table((), rows, (19, 81), "ll", "cardcell")
+    return ink.table((), rows, (16, 84), "ll", "cardcell")
 
 
 def _meanings(ink: Ink, functions: list[Function]) -> Flow:

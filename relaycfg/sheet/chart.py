@@ -11,6 +11,8 @@ from relaycfg.sheet import figures, fonts
 Point = tuple[float, float]
 SIZE = 6.6
 EVEN_ODD = 0
+NEAR = 4.0
+"""A label so near to its mark needs no line to it."""
 DASHED, DOTTED = (5, 2.2), (1, 2)
 
 
@@ -53,6 +55,16 @@ class Axes:
         share = (level - self.low) / (self.high - self.low)
         return self.y + min(max(share, 0.0), 1.0) * self.height
 
+    def holds(self, level: float) -> bool:
+        """Whether a level lies on the axis."""
+        return self.low <= level <= self.high
+
+    @property
+    def ever_edge(self) -> list[Point]:
+        """The upright line before the strip that stands for "for ever"."""
+        edge = self.x + self.width - self.ever
+        return [(edge, self.y), (edge, self.y + self.height)]
+
     @property
     def ticks(self) -> list[float]:
         """Round levels, at most nine."""
@@ -80,8 +92,7 @@ class Axes:
                     minor = self.across(decade * k)
                     canvas.line(minor, self.y - 2, minor, self.y)
             decade *= 10
-        edge = self.x + self.width - self.ever
-        stroke(canvas, [(edge, self.y), (edge, self.y + self.height)], 0.3, DOTTED)
+        stroke(canvas, self.ever_edge, 0.3, DOTTED)
         text(canvas, self.x + self.width, self.y - 20, ever_name, "end")
         text(canvas, self.x - 5, self.y + self.height + 5, level_name, "start")
         text(canvas, self.x + (self.width - self.ever) / 2, self.y - 20, time_name, "middle")
@@ -95,6 +106,7 @@ class Labels:
 
     box: tuple[float, float, float, float]
     taken: list[tuple[float, float, float, float]] = field(default_factory=list)
+    written: list[tuple[float, float, float, float]] = field(default_factory=list)
 
     def block(self, x: float, y: float, half: float = 2.6) -> None:
         """Keep a mark's own spot free of labels."""
@@ -109,7 +121,7 @@ class Labels:
         """Write ``label`` near (x, y) on a white ground; False where no spot is free."""
         wide, tall = fonts.width(label, SIZE, font) + 2, SIZE + 0.6
         left, bottom, width, height = self.box
-        for radius in (4.0, 10.0, 17.0):
+        for radius in (NEAR, 10.0, 17.0, 25.0):
             spots = (
                 (x + radius, y - tall / 2),
                 (x - radius - wide, y - tall / 2),
@@ -123,8 +135,12 @@ class Labels:
             for px, py in spots:
                 spot = (px, py, px + wide, py + tall)
                 inside = left < px and bottom < py and spot[2] < left + width and spot[3] < bottom + height
-                if inside and not any(_meet(spot, other) for other in self.taken):
-                    self._write(canvas, spot, (x, y) if radius > 4 else None, label, font)
+                if not inside or any(_meet(spot, other) for other in self.taken):
+                    continue
+                leader = _leader((x, y), spot) if radius > NEAR else []
+                if not any(_meet(bead, other) for bead in leader for other in self.written):
+                    self._write(canvas, spot, (x, y) if radius > NEAR else None, label, font)
+                    self.taken += leader
                     return True
         return False
 
@@ -133,12 +149,25 @@ class Labels:
     ) -> None:
         px, py, right, top = spot
         if mark is not None:
-            stroke(canvas, [mark, (min(max(mark[0], px), right), min(max(mark[1], py), top))], 0.3)
+            stroke(canvas, [mark, _nearest(mark, spot)], 0.3)
         canvas.setFillGray(1)
         canvas.rect(px, py, right - px, top - py, stroke=0, fill=1)
         canvas.setFillGray(0)
         text(canvas, px + 1, py + 1.4, label, "start", font)
         self.taken.append(spot)
+        self.written.append(spot)
+
+
+def _nearest(mark: Point, spot: tuple[float, float, float, float]) -> Point:
+    """The point of a label's box that is nearest to its mark."""
+    return min(max(mark[0], spot[0]), spot[2]), min(max(mark[1], spot[1]), spot[3])
+
+
+def _leader(mark: Point, spot: tuple[float, float, float, float]) -> list[tuple[float, float, float, float]]:
+    """Small boxes along the line from a mark to its label, both ends left out."""
+    end = _nearest(mark, spot)
+    beads = [(mark[0] + (end[0] - mark[0]) * k / 12, mark[1] + (end[1] - mark[1]) * k / 12) for k in range(3, 12)]
+    return [(x - 0.4, y - 0.4, x + 0.4, y + 0.4) for x, y in beads]
 
 
 def _meet(a: tuple[float, float, float, float], b: tuple[float, float, float, float]) -> bool:
@@ -161,6 +190,13 @@ def stroke(canvas: Any, points: Sequence[Point], weight: float, dash: tuple[floa
     canvas.setDash(*([list(dash)] if dash else []))
     canvas.drawPath(path, stroke=1, fill=0)
     canvas.setDash()
+
+
+def arrow(canvas: Any, x: float, y: float, by: float) -> None:
+    """An upright arrow from (x, y), ``by`` long, downward where that is negative."""
+    stroke(canvas, [(x, y), (x, y + by)], 0.8)
+    head = by / abs(by) * 3.6
+    canvas.drawPath(polygon(canvas, [(x, y + by), (x - 2, y + by - head), (x + 2, y + by - head)]), stroke=0, fill=1)
 
 
 def polygon(canvas: Any, points: Sequence[Point]) -> Any:

@@ -1,16 +1,19 @@
 """The corridor of each element: what it has to ride through, what it has to clear, and the stages between the two."""
 
-import re
 from typing import Any
 
 from relaycfg import units
 from relaycfg.model.device import Function
 from relaycfg.model.results import Corridor, CurveStep, StageResult
 from relaycfg.sheet import figures, fonts
-from relaycfg.sheet.chart import DASHED, Axes, Labels, Point, hatch, polygon, stroke, text
+from relaycfg.sheet.chart import DASHED, Axes, Labels, Point, arrow, hatch, polygon, stroke, text
 from relaycfg.sheet.ink import Flow, Ink, Sketch
 from relaycfg.sheet.settings_table import on
 
+LOWEST_PU, HIGHEST_PU, BELOW_PU = 0.5, 1.1, 0.05
+"""The volts axis of 27 in parts of the nominal volts: its ends, and the room below the lowest stage."""
+ARROW = 8.0
+"""Length of the arrow at a case beyond the axis."""
 _HEIGHT = 232.0
 
 
@@ -32,10 +35,10 @@ def _corridor(ink: Ink, corridor: Corridor, stages: list[StageResult]) -> Flow:
         _draw(ink, canvas, (34, 36, width - 40, height - 52), corridor, stages)
 
     rows = [
-        *_rows(wording.text("corridors.ride_through"), corridor.ride_through, corridor),
-        *_rows(wording.text("corridors.withstand"), corridor.withstand, corridor),
+        *_rows(wording.text("corridors.ride_through"), corridor.ride_through, corridor, units.FOR_EVER),
+        *_rows(wording.text("corridors.withstand"), corridor.withstand, corridor, units.FOR_EVER),
         *([r.stage.label, _level(corridor, r.stage.pickup), figures.by_unit(r.stage.delay_s, "s"), ""] for r in stages),
-        *_rows(wording.text("corridors.case"), corridor.cases, corridor),
+        *_rows(wording.text("corridors.case"), corridor.cases, corridor, wording.text("corridors.no_reset")),
     ]
     key = f"corridor_{element}"
     return [
@@ -51,12 +54,13 @@ def _level(corridor: Corridor, value: float) -> str:
     return figures.by_unit(value, "%" if corridor.function is Function.UNBALANCE else "V")
 
 
-def _rows(name: str, steps: tuple[CurveStep, ...], corridor: Corridor) -> list[list[str]]:
+def _rows(name: str, steps: tuple[CurveStep, ...], corridor: Corridor, endless: str) -> list[list[str]]:
+    """Rows of a curve; ``endless`` stands where a step has no seconds."""
     return [
         [
             name,
             _level(corridor, s.pickup),
-            units.FOR_EVER if s.seconds is None else figures.by_unit(s.seconds, "s"),
+            endless if s.seconds is None else figures.by_unit(s.seconds, "s"),
             s.behind,
         ]
         for s in steps
@@ -66,20 +70,19 @@ def _rows(name: str, steps: tuple[CurveStep, ...], corridor: Corridor) -> list[l
 def _draw(
     ink: Ink, canvas: Any, box: tuple[float, float, float, float], corridor: Corridor, stages: list[StageResult]
 ) -> None:
-    steps = (*corridor.ride_through, *corridor.withstand, *corridor.cases)
-    times = [s.seconds for s in steps] + [r.stage.delay_s for r in stages]
-    levels = [s.pickup for s in steps] + [r.stage.pickup for r in stages] + [corridor.standing]
-    axes = Axes.around(box, times, levels)
+    axes = _axes(box, corridor, stages, ink.study.site.supply.nominal_v)
     severe = axes.low if corridor.function is Function.UNDERVOLTAGE else axes.high
     mild = axes.high if corridor.function is Function.UNDERVOLTAGE else axes.low
-    ride = [(s.seconds, s.pickup) for s in corridor.ride_through]
+    ride = [(s.seconds, s.pickup) for s in corridor.ride_through if axes.holds(s.pickup)]
+    left = [(s.seconds, s.pickup) for s in corridor.withstand if axes.holds(s.pickup)]
     if ride:
         hatch(canvas, polygon(canvas, _region(axes, ride, mild, severe)), box, 45)
     labels = Labels(box)
-    if corridor.withstand:
-        edge = _staircase(axes, [(s.seconds, s.pickup) for s in corridor.withstand], severe)
+    labels.block_line(axes.ever_edge)
+    if left:
+        edge = _staircase(axes, left, severe)
         labels.block_line(edge)
-        stroke(canvas, edge, 2.2)
+        _double(canvas, edge)
     line = _staircase(axes, _operating(stages, corridor.function), severe)
     labels.block_line(line)
     stroke(canvas, line, 1.1, DASHED)
@@ -91,7 +94,29 @@ def _draw(
         str(words.text("corridors.ever").striptags()),
     )
     _marks(canvas, axes, labels, corridor, stages)
-    _legend(ink, canvas, box)
+    _legend(ink, canvas, box, any(not axes.holds(c.pickup) for c in corridor.cases))
+
+
+def _axes(
+    box: tuple[float, float, float, float], corridor: Corridor, stages: list[StageResult], nominal_v: float
+) -> Axes:
+    """Axes round the curves and the stages; for 27 from half the nominal volts (or below the lowest stage) upward."""
+    curves = (*corridor.ride_through, *corridor.withstand)
+    times = [s.seconds for s in (*curves, *corridor.cases)] + [r.stage.delay_s for r in stages]
+    pickups = [r.stage.pickup for r in stages]
+    levels = [*(s.pickup for s in curves), *pickups, corridor.standing]
+    if corridor.function is Function.UNDERVOLTAGE:
+        floor = min(LOWEST_PU * nominal_v, *(p - BELOW_PU * nominal_v for p in pickups))
+        levels = [floor, HIGHEST_PU * nominal_v, *(v for v in levels if v >= floor)]
+    return Axes.around(box, times, levels)
+
+
+def _double(canvas: Any, points: list[Point]) -> None:
+    """A boundary as two thin lines, wide enough that a dashed line within it stays to be seen."""
+    stroke(canvas, points, 3.8)
+    canvas.setStrokeGray(1)
+    stroke(canvas, points, 2.6)
+    canvas.setStrokeGray(0)
 
 
 def _operating(stages: list[StageResult], function: Function) -> list[tuple[float | None, float]]:
@@ -131,9 +156,12 @@ def _marks(canvas: Any, axes: Axes, labels: Labels, corridor: Corridor, stages: 
     spots: dict[tuple[int, int], tuple[float, float, list[str]]] = {}
     for case in corridor.cases:
         x, y = axes.across(case.seconds), axes.up(case.pickup)
-        number = re.search(r"\d+", case.behind)
+        if not axes.holds(case.pickup):
+            y += ARROW if case.pickup < axes.low else -ARROW
         spot = spots.setdefault((round(x / 3), round(y / 3)), (x, y, []))
-        spot[2].append(number.group() if number else case.behind)
+        spot[2].append(case.behind if case.case is None else str(case.case))
+        if not axes.holds(case.pickup):
+            arrow(canvas, x, y, -ARROW if case.pickup < axes.low else ARROW)
     squares = [(axes.across(r.stage.delay_s), axes.up(r.stage.pickup), r.stage.number) for r in stages]
     for x, y, _ in (*spots.values(), *squares):
         labels.block(x, y)
@@ -150,11 +178,13 @@ def _marks(canvas: Any, axes: Axes, labels: Labels, corridor: Corridor, stages: 
         labels.place(canvas, x, y, ", ".join(numbers))
 
 
-def _legend(ink: Ink, canvas: Any, box: tuple[float, float, float, float]) -> None:
+def _legend(ink: Ink, canvas: Any, box: tuple[float, float, float, float], beyond: bool) -> None:
     """Samples of each line and mark in one row below the chart."""
     x, y = box[0], box[1] - 32
     names = dict(ink.wording.pairs("corridors.legend"))
     for key, name in names.items():
+        if key == "beyond" and not beyond:
+            continue
         plain = str(name.striptags())
         if key == "ride_through":
             sample = (x, y - 1, 16.0, 7.0)
@@ -163,13 +193,16 @@ def _legend(ink: Ink, canvas: Any, box: tuple[float, float, float, float]) -> No
             canvas.setLineWidth(0.3)
             canvas.rect(*sample)
         elif key == "withstand":
-            stroke(canvas, [(x, y + 2.5), (x + 16, y + 2.5)], 2.2)
+            _double(canvas, [(x, y + 2.5), (x + 16, y + 2.5)])
         elif key == "stage":
             stroke(canvas, [(x, y + 2.5), (x + 16, y + 2.5)], 1.1, DASHED)
             canvas.setFillGray(1)
             canvas.rect(x + 5.4, y - 0.1, 5.2, 5.2, stroke=1, fill=1)
             canvas.setFillGray(0)
-        else:
+        elif key == "case":
             canvas.circle(x + 8, y + 2.5, 1.9, stroke=0, fill=1)
+        else:
+            canvas.circle(x + 8, y + 5, 1.9, stroke=0, fill=1)
+            arrow(canvas, x + 8, y + 5, -ARROW)
         text(canvas, x + 20, y, plain, "start")
         x += 32 + fonts.width(plain, 6.6)

@@ -6,12 +6,14 @@ from typing import Any
 from markupsafe import Markup
 from reportlab.platypus import KeepInFrame
 
-from relaycfg.model.results import Study
+from relaycfg.model.results import Finding, Study
 from relaycfg.sheet.ink import GREY, HAIR, Flow, Ink, Sketch
 from relaycfg.sheet.settings_table import settings_table
 
 SHOWN = 5
 """At most so many exceptions and blind places on this page; the rest is counted."""
+ALL = "all"
+"""All elements together, as coverage names them; "all, ..." are all under a condition."""
 _SIZE = 7.6
 
 
@@ -29,6 +31,8 @@ def decision(ink: Ink) -> Flow:
         ink.gap(7),
         ink.say("decision.verdict", "big", study=study, exceptions=study.exceptions),
         *_exceptions(ink),
+        *_uncleared(ink),
+        *_unexamined(ink),
         ink.gap(3),
         *settings_table(ink),
         ink.gap(6),
@@ -58,9 +62,9 @@ def _identity(ink: Ink) -> Flow:
     return ink.table((), rows, (9, 27, 8, 56), "llll")
 
 
-def blind(study: Study) -> list[str]:
-    """Break places that the relay cannot see, each with its reason."""
-    return [f"{s.at} ({s.conductor}): {s.why_not}" for s in study.breaks.summaries if not s.seen]
+def blind(ink: Ink) -> list[Markup]:
+    """Break places that the relay cannot see, each with its reason and the share of load states that do harm."""
+    return [ink.wording.text("decision.blind", s=s) for s in ink.study.breaks.summaries if not s.seen]
 
 
 def _undetected(ink: Ink) -> Flow:
@@ -68,7 +72,7 @@ def _undetected(ink: Ink) -> Flow:
     seen = [s for s in study.breaks.summaries if s.seen]
     worst = max(seen, key=lambda s: s.undetected.percent, default=None)
     relay = study.site.relay
-    places = blind(study)
+    places = blind(ink)
     return [
         ink.say("decision.undetected_title", "body"),
         *ink.items("decision.undetected", "item", study=study, worst=worst, relay=relay, blind=len(places)),
@@ -80,21 +84,47 @@ def _undetected(ink: Ink) -> Flow:
 def _exceptions(ink: Ink) -> Flow:
     found = [f for f in ink.study.findings if f.exception]
     return [
-        *(ink.p(Markup("<b>{}</b> {}").format(f.about, f.sentence), "item", bullet="!") for f in found[:SHOWN]),
+        *(ink.p(told(f), "item", bullet="!") for f in found[:SHOWN]),
         *_more(ink, len(found) - SHOWN, "findings"),
     ]
 
 
+def told(finding: Finding) -> Markup:
+    """A finding's sentence with what it is about in bold, said once."""
+    about, sentence = finding.about, finding.sentence
+    if sentence.lower().startswith(about.lower()):
+        return Markup("<b>{}</b>{}").format(sentence[: len(about)], sentence[len(about) :])
+    return Markup("<b>{}</b>: {}").format(about, sentence)
+
+
+def _uncleared(ink: Ink) -> Flow:
+    """What these settings leave: the share of harmful states at nominal supply, and the scenarios by their cause."""
+    study = ink.study
+    harmful = sum(s.harmful.count for s in study.breaks.summaries if s.seen)
+    covers = {c.elements: c.cleared_percent for c in study.coverage}
+    alone = covers.get(ALL, 0.0)
+    fed = next((percent for name, percent in covers.items() if name.startswith(f"{ALL},")), None)
+    return [ink.say("decision.uncleared", "body", study=study, harmful=harmful, alone=alone, fed=fed)]
+
+
+def _unexamined(ink: Ink) -> Flow:
+    count = len(ink.wording.lines("sight.unexamined"))
+    return _line(ink, "decision.unexamined", "sight_unexamined", 0, 8.4, count=count)
+
+
 def _more(ink: Ink, count: int, key: str) -> Flow:
-    """The line "and n more on page k", its page filled in when it is known."""
-    if count <= 0:
-        return []
+    """The line "and n more on page k"."""
+    return _line(ink, "decision.more", key, 11, _SIZE, count=count) if count > 0 else []
+
+
+def _line(ink: Ink, text: str, key: str, indent: float, size: float, **context: object) -> Flow:
+    """A line from the wording that names the page of ``key``, filled in when it is known."""
 
     def draw(canvas: Any, width: float, _height: float) -> None:
         def write(page: int) -> str:
-            return str(ink.wording.text("decision.more", count=count, page=page).striptags())
+            return str(ink.wording.text(text, page=page, **context).striptags())
 
-        ink.later.stamp(canvas, key, 11, 3, _SIZE, width - 30, write)
+        ink.later.stamp(canvas, key, indent, 3, size, width - indent, write)
 
     return [Sketch(ink.width - 20, 12, draw)]
 
@@ -105,14 +135,13 @@ def _scope(ink: Ink) -> Flow:
 
 
 def counts(study: Study) -> dict[str, str]:
-    """What the figures rest on, as counted; waivers are part of no input yet."""
+    """What the figures rest on, as counted."""
     inputs = study.site.inputs
     return {
         "defaults": str(sum(i.tag == "default" for i in inputs)),
         "assumed": str(sum(i.tag == "assumed" for i in inputs)),
         "memory_inputs": str(sum(i.status == "memory" for i in inputs)),
         "memory_cases": str(sum(c.status == "memory" for c in study.cases)),
-        "waivers": "0",
         "samples": str(study.samples),
         "seed": str(study.seed),
     }

@@ -2,6 +2,8 @@
 
 from typing import Any
 
+from reportlab.platypus import KeepTogether
+
 from relaycfg.model.results import Bound, Margins, StageResult
 from relaycfg.sheet import figures
 from relaycfg.sheet.ink import Flow, Ink
@@ -9,7 +11,7 @@ from relaycfg.sheet.settings_table import off, on
 
 
 def derivation(ink: Ink) -> Flow:
-    """One block a stage that is on, then the reasons of those that are off."""
+    """One block a stage that is on, kept whole, then the reasons of those that are off."""
     wording = ink.wording
     blocks: Flow = []
     for number, result in enumerate(on(ink.study), 1):
@@ -19,12 +21,13 @@ def derivation(ink: Ink) -> Flow:
         for r in ink.study.stages
         if not r.stage.on and r.reason
     ]
+    rule = [ink.say("derivation.choice", study=ink.study)]
     rest = (
         []
         if not off(ink.study)
         else [*ink.heading("derivation_off", 1, wording.text("derivation.off_title")), *reasons]
     )
-    return [*ink.heading("derivation", room=260), ink.say("derivation.lead"), *blocks, *rest]
+    return [*ink.heading("derivation", room=260), ink.say("derivation.lead"), *rule, *blocks, *rest]
 
 
 def _stage(ink: Ink, number: int, result: StageResult) -> Flow:
@@ -34,7 +37,7 @@ def _stage(ink: Ink, number: int, result: StageResult) -> Flow:
         "derivation.stage", label=result.stage.label, pickup=figures.pickup(result), delay=result.stage.delay_s
     )
     blocks: Flow = [
-        *ink.heading(f"derivation_{number}", 1, title, room=175),
+        *ink.heading(f"derivation_{number}", 1, title)[1:],
         ink.p(result.reason),
         ink.say("derivation.figures", "small", r=result, band=band),
     ]
@@ -51,7 +54,7 @@ def _stage(ink: Ink, number: int, result: StageResult) -> Flow:
         blocks += ink.table(
             wording.lines("derivation.margin_heads"), _margins(ink, result.margins, unit), (20, 12, 12, 8, 48), "lrrrl"
         )
-    return blocks
+    return [KeepTogether(blocks)]
 
 
 def _bound(bound: Bound) -> list[Any]:

@@ -1,10 +1,15 @@
 """The sheet's figures, rounded once by ``units``: an absent one is an en dash, a share has its interval."""
 
+import re
+
 from relaycfg import units
 from relaycfg.model.device import Function
 from relaycfg.model.results import Share, StageResult
 
 ABSENT = "–"
+SHORT_DIGITS, LONG_DIGITS = 12, 6
+NUMBERS = re.compile(r"[-+\d.,\sj\[\]]+")
+"""A number, a complex one, or a list of them."""
 
 
 def _shown(rounded: str) -> str:
@@ -46,6 +51,24 @@ def dial(value: float | None) -> str:
     if value is None:
         return ABSENT
     return f"{value:.1f}" if abs(value - round(value, 1)) < 1e-6 else f"{value:.2f}"
+
+
+def given(value: str) -> str:
+    """An input as written; computed figures of six and more digits to four significant ones."""
+
+    def rounded(match: re.Match[str]) -> str:
+        number, whole = float(match.group()), len(match.group().partition(".")[0])
+        if len(match.group().lstrip("0.").replace(".", "")) < LONG_DIGITS:
+            return match.group()
+        return f"{number:.4g}" if number < 1 else f"{number:.{max(0, 4 - whole)}f}"
+
+    return re.sub(r"\d+\.\d+", rounded, value) if NUMBERS.fullmatch(value) else value
+
+
+def short(digest: str) -> str:
+    """The head of a digest, enough to tell two sheets apart, with the name of its kind."""
+    kind, colon, digits = digest.rpartition(":")
+    return f"{kind}{colon}{digits[:SHORT_DIGITS]}"
 
 
 def unit_of(function: Function) -> str:

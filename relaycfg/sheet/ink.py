@@ -1,5 +1,6 @@
 """Paragraphs, tables and headings in one grid; every text is escaped and checked here before it is laid out."""
 
+import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Literal
@@ -20,7 +21,6 @@ Draw = Callable[[Any, float, float], None]
 HAIR, RULE, HEAVY = 0.3, 0.7, 1.6
 GREY = Color(0.45, 0.45, 0.45)
 """Of hairlines only: nothing is lost where a printer drops them."""
-ROWS_A_TABLE = 400
 _PAD = 3.0
 
 
@@ -47,6 +47,8 @@ STYLES: dict[str, ParagraphStyle] = {
         _style("body", 8.4, 11.2, after=3),
         _style("small", 7.2, 9.2, before=3, after=2),
         _style("item", 8.4, 11.2, indent=11, after=2),
+        _style("tight", 7.6, 9.6, indent=11, after=0.5),
+        _style("below", 8.4, 10.4),
         _style("big", 11, 14.5, after=3),
         _style("bigitem", 10, 13, indent=13, after=2.5),
         _style("title", 17, 20.5, after=4),
@@ -80,6 +82,22 @@ class Sketch(Flowable):
         self.canv.saveState()
         self._draw(self.canv, self.width, self.height)
         self.canv.restoreState()
+
+
+class Rows(Table):
+    """A table that breaks between its rows; a row is split only where a whole page (``splitInRow`` high) is too low."""
+
+    def split(self, availWidth: float, availHeight: float) -> Flow:
+        """Called by the layout with what is left of the page; nothing returned: on to the next page."""
+        page = self.splitInRow
+        self.splitInRow = 0
+        parts: Flow = super().split(availWidth, availHeight)
+        if not parts and availHeight >= page - 1:
+            self.splitInRow = 1
+            parts = super().split(availWidth, availHeight)
+        for part in (self, *parts):
+            part.splitInRow = page
+        return parts
 
 
 @dataclass
@@ -171,13 +189,20 @@ class Ink:
         if heads:
             look += [("LINEABOVE", (0, 0), (-1, 0), RULE, black), ("LINEBELOW", (0, 0), (-1, 0), RULE, black)]
         look += extra
-        parts: Flow = []
-        for start in range(0, max(len(body), 1), ROWS_A_TABLE):
-            data = ([head] if heads else []) + body[start : start + ROWS_A_TABLE]
-            parts.append(
-                Table(data, colWidths=widths, repeatRows=1 if heads else 0, style=look, hAlign="LEFT", splitInRow=1)
-            )
-        return parts
+        data = ([head] if heads else []) + body
+        if not data:
+            return []
+        repeat = 1 if heads else 0
+        return [Rows(data, colWidths=widths, repeatRows=repeat, style=look, hAlign="LEFT", splitInRow=int(self.height))]
+
+    def broken(self, name: str, width: float, style: str = "cell") -> Markup:
+        """A long name for a cell ``width`` wide: its lines end at dots, underscores and spaces, never within a word."""
+        lines, size = [""], STYLES[style].fontSize
+        for part in re.findall(r"[^._ ]*[._ ]?", name):
+            if lines[-1] and fonts.width(lines[-1] + part.rstrip(), size) > width - 2 * _PAD:
+                lines.append("")
+            lines[-1] += part
+        return Markup("<br/>").join(self.markup(line.strip()) for line in lines)
 
     def boxed(self, content: Flow, bar: float = HEAVY, width: float | None = None) -> Any:
         """Content behind a heavy bar at its left, for what must be read first."""
@@ -193,6 +218,19 @@ class Ink:
                 ("RIGHTPADDING", (0, 0), (-1, -1), 6),
                 ("TOPPADDING", (0, 0), (-1, -1), 5),
                 ("BOTTOMPADDING", (0, 0), (-1, -1), 4),
+            ],
+        )
+
+    def framed(self, content: Flow, line: float, inset: float) -> Any:
+        """Content within a heavy frame, for what must not be taken for an order."""
+        return Table(
+            [[content]],
+            colWidths=[self.width],
+            hAlign="LEFT",
+            style=[
+                ("FONT", (0, 0), (-1, -1), fonts.SANS, 8),
+                ("BOX", (0, 0), (-1, -1), line, black),
+                *((f"{side}PADDING", (0, 0), (-1, -1), inset) for side in ("LEFT", "RIGHT", "TOP", "BOTTOM")),
             ],
         )
 

@@ -8,16 +8,20 @@ from relaycfg.model.site import SOURCE, Equipment, Site
 from relaycfg.sheet import figures
 from relaycfg.sheet.ink import Flow, Ink
 
+USER = "user"
+"""Status of what the user gave; what the files leave empty is such."""
+
 
 def inputs(ink: Ink) -> Flow:
     """All inputs in the order of the file; what is not the user's own stands in bold."""
+    shares = (30, 17, 8, 11, 15, 26)
     rows: list[list[Any]] = [
         [
-            i.field,
-            i.value,
+            ink.broken(i.field, ink.width * shares[0] / sum(shares)),
+            figures.given(i.value),
             i.unit,
             Markup("<b>{}</b>").format(i.tag) if i.tag in ("default", "assumed") else i.tag,
-            status(ink, i.status),
+            status(ink, i.status or USER),
             i.note,
         ]
         for i in ink.study.site.inputs
@@ -26,7 +30,7 @@ def inputs(ink: Ink) -> Flow:
     return [
         *ink.heading("inputs"),
         ink.say("inputs.lead"),
-        *ink.table(ink.wording.lines("inputs.heads"), rows, (30, 17, 8, 11, 15, 26), "lrllll"),
+        *ink.table(ink.wording.lines("inputs.heads"), rows, shares, "lrllll"),
         *ink.heading("inputs_withstand", 1, ink.wording.text("inputs.withstand_title")),
         ink.say("inputs.withstand", e=equipment, status=status(ink, equipment.status)),
         *ink.table(
@@ -58,13 +62,15 @@ def _withstand(ink: Ink, e: Equipment) -> list[list[Any]]:
 
 
 def _feeds(ink: Ink) -> Flow:
-    feeds = ink.study.feed_range_v
-    if not feeds:
+    feeds, relay = ink.study.feed_range_v, ink.study.site.relay
+    if not feeds or relay is None:
         return []
+    supply, coil = (ink.wording.text("inputs.feed_range", feed=f) for f in (relay.supply, relay.trip_coil))
     rows = [[what, figures.by_unit(low, "V"), figures.by_unit(high, "V")] for what, low, high in feeds]
     return [
         *ink.heading("inputs_feeds", 1, ink.wording.text("inputs.feeds_title")),
         *ink.table(ink.wording.lines("inputs.feeds_heads"), rows, (60, 20, 20), "lrr"),
+        ink.say("inputs.ranges", "small", relay=relay, supply=supply, coil=coil),
     ]
 
 

@@ -18,17 +18,17 @@ def cases(ink: Ink) -> Flow:
     return [
         *ink.heading("cases"),
         ink.say("cases.lead", standing=ink.study.displacement_standing_v),
-        *ink.table(ink.wording.lines("cases.heads"), rows, (4.5, 31, 7, 14, 7.5, 7.5, 7.5, 8.5, 8.5, 16), "rlllrrrrrl"),
+        *ink.table(ink.wording.lines("cases.heads"), rows, (4, 33, 6.5, 16, 7, 7, 7, 11, 11), "rlllrrrrr"),
     ]
 
 
 def _case(ink: Ink, c: CaseResult) -> list[Any]:
-    known = status(ink, c.status)
-    what = ink.wording.text("cases.case", c=c, status=known)
+    what = ink.wording.text("cases.case", c=c, status=status(ink, c.status))
     outcome = c.outcome if c.passed else Markup("<b>! {}</b>").format(c.outcome)
     if c.operated:
-        first, more = ", ".join(c.operated[:OPERATED_SHOWN]), len(c.operated) - OPERATED_SHOWN
-        outcome = Markup("{}: {}{}").format(outcome, first, f" and {more} more" if more > 0 else "")
+        first = "; ".join(ink.wording.text("cases.operated", o=o) for o in c.operated[:OPERATED_SHOWN])
+        more = len(c.operated) - OPERATED_SHOWN
+        outcome = Markup("{}: {}{}").format(outcome, first, f"; and {more} more" if more > 0 else "")
     return [
         str(c.number),
         what,
@@ -37,10 +37,14 @@ def _case(ink: Ink, c: CaseResult) -> list[Any]:
         figures.volts(c.highest_l_n_v),
         figures.volts(c.lowest_l_n_v),
         figures.volts(c.highest_v0_v),
-        figures.volts(c.margin_v),
-        figures.seconds(c.margin_s),
-        c.nearest,
+        _margin(figures.by_unit(c.margin_v, "V"), c.nearest_v),
+        _margin(figures.by_unit(c.margin_s, "s"), c.nearest_s),
     ]
+
+
+def _margin(figure: str, stage: str) -> Markup:
+    """A margin with the stage it is of below it."""
+    return Markup("{}<br/>{}").format(figure, stage) if stage else Markup(figure)
 
 
 def breaks(ink: Ink) -> Flow:

@@ -8,7 +8,7 @@ from relaycfg.model.results import PlanePoint, StageResult, Study
 from relaycfg.sheet import figures, fonts
 from relaycfg.sheet.chart import DASHED, DOTTED, hatch, stroke, text
 from relaycfg.sheet.ink import Flow, Ink, Sketch
-from relaycfg.sheet.settings_table import on
+from relaycfg.sheet.settings_table import measured, on
 
 _SIDE = 330.0
 _CLASSES = ("undetected", "early", "cleared", "left")
@@ -30,11 +30,16 @@ def plane(ink: Ink) -> Flow:
 
     return [
         *ink.heading("plane", room=_SIDE + 140),
-        ink.say("plane.lead", supply=ink.study.site.supply),
+        ink.say("plane.lead", source=ink.study.site.source, each=_each(ink.study)),
         Sketch(ink.width, _SIDE + 6, draw),
         ink.gap(4),
         *ink.table(wording.lines("plane.heads"), rows, (75, 25), "lr", width=0.6 * ink.width),
     ]
+
+
+def _each(study: Study) -> int:
+    """At most so many states of each place seen are shown."""
+    return math.ceil(len(study.plane) / max(study.breaks.seen_places, 1))
 
 
 def _class(point: PlanePoint) -> str:
@@ -45,12 +50,11 @@ def _class(point: PlanePoint) -> str:
 
 def rings(study: Study) -> list[Ring]:
     """Pickup circles [V] of the most sensitive stages: round every line corner, 59N round the undisplaced neutral."""
-    supply = study.site.supply
-    corners = [complex(c) for c in supply.geometry.phasors * supply.nominal_v * 1j]
+    corners = _corners(study)
     found: list[Ring] = []
     for function in (Function.OVERVOLTAGE, Function.UNDERVOLTAGE, Function.DISPLACEMENT):
         stages = [r for r in on(study) if r.stage.function is function and r.stage.phases == "any"]
-        radii = [_radius(r, study) for r in stages if _quantity(r, study) != "l-l"]
+        radii = [_radius(r, study) for r in stages if measured(r, study) != "l-l"]
         if not radii:
             continue
         radius = max(radii) if function is Function.UNDERVOLTAGE else min(radii)
@@ -59,20 +63,19 @@ def rings(study: Study) -> list[Ring]:
     return found
 
 
-def _quantity(result: StageResult, study: Study) -> str:
-    element = study.device.element(result.stage.function)
-    return result.stage.quantity or (element.quantity if element else "")
+def _corners(study: Study) -> list[complex]:
+    """The lines at the source's no-load volts, the first upward."""
+    return [complex(c) * study.site.source.emf_v * 1j for c in study.site.supply.geometry.phasors]
 
 
 def _radius(result: StageResult, study: Study) -> float:
     """The circle's radius [V]: a pickup in 3V0 counts a third."""
-    return result.stage.pickup / (3 if _quantity(result, study) == "3v0" else 1)
+    return result.stage.pickup / (3 if measured(result, study) == "3v0" else 1)
 
 
 def _draw(ink: Ink, canvas: Any, width: float, height: float) -> None:
     study = ink.study
-    nominal = study.site.supply.nominal_v
-    reach = 1.12 * max([nominal, *(abs(p.v0) for p in study.plane)])
+    reach = 1.12 * max([study.site.source.emf_v, *(abs(p.v0) for p in study.plane)])
     box = (0.0, 3.0, _SIDE, _SIDE)
     scale = _SIDE / 2 / reach
     middle = complex(_SIDE / 2, 3 + _SIDE / 2)
@@ -90,7 +93,7 @@ def _draw(ink: Ink, canvas: Any, width: float, height: float) -> None:
         canvas.setDash(list(_DASH[function]))
         canvas.circle(at.real, at.imag, scale * radius, stroke=1, fill=0)
     canvas.setDash()
-    corners = [middle + scale * complex(c) * nominal * 1j for c in study.site.supply.geometry.phasors]
+    corners = [middle + scale * corner for corner in _corners(study)]
     stroke(canvas, [(c.real, c.imag) for c in (*corners, corners[0])], 0.5)
     _points(canvas, study.plane, middle, scale)
     canvas.restoreState()

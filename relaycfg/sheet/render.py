@@ -1,6 +1,8 @@
 """The whole sheet: sections in their order, head and foot on every page, PDF bytes that depend on the input alone."""
 
-from collections.abc import Callable
+import os
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from io import BytesIO
 from pathlib import Path
 from typing import Any
@@ -10,7 +12,7 @@ from reportlab.platypus import BaseDocTemplate, Frame, PageBreak, PageTemplate
 
 from relaycfg.errors import InputError, Problem
 from relaycfg.model.results import Study
-from relaycfg.sheet import fonts
+from relaycfg.sheet import figures, fonts
 from relaycfg.sheet.card import card
 from relaycfg.sheet.closing import cautions, closed, digest, findings, glossary, sources, worked
 from relaycfg.sheet.corridors import corridors
@@ -26,7 +28,6 @@ from relaycfg.sheet.sight import sight
 from relaycfg.sheet.wording import Wording
 
 SIDE, TOP, BOTTOM = 48.0, 56.0, 48.0
-SHORT_DIGEST = 12
 SECTIONS: dict[str, Callable[[Ink], Flow]] = {
     "decision": decision,
     "card": card,
@@ -83,8 +84,20 @@ def render(study: Study, templates: Path, version: str) -> bytes:
     )
     frame = Frame(SIDE, BOTTOM, width, height, leftPadding=0, rightPadding=0, topPadding=0, bottomPadding=0)
     sheet.addPageTemplates(PageTemplate(frames=[frame], onPage=lambda canvas, _: _head_and_foot(canvas, ink, paper)))
-    sheet.build(story)
+    with _fixed_date():
+        sheet.build(story)
     return target.getvalue()
+
+
+@contextmanager
+def _fixed_date() -> Iterator[None]:
+    """Same input, same bytes: the build date of the environment is not an input."""
+    given = os.environ.pop("SOURCE_DATE_EPOCH", None)
+    try:
+        yield
+    finally:
+        if given is not None:
+            os.environ["SOURCE_DATE_EPOCH"] = given
 
 
 def _printed(study: Study) -> dict[str, object]:
@@ -111,7 +124,9 @@ def _head_and_foot(canvas: Any, ink: Ink, paper: tuple[float, float]) -> None:
     top, low = paper[1] - 36, 30.0
     context = {
         "document": document,
-        "digest": study.input_digest[:SHORT_DIGEST],
+        "inputs": figures.short(study.input_digest),
+        "settings": figures.short(study.settings.digest),
+        "samples": study.samples,
         "version": ink.version,
         "seed": study.seed,
     }
@@ -125,7 +140,7 @@ def _head_and_foot(canvas: Any, ink: Ink, paper: tuple[float, float]) -> None:
     canvas.line(SIDE, low + 9, right, low + 9)
     line(canvas, " ".join(document.title.split()), SIDE, top, 0.48 * ink.width, 7.4, fonts.BOLD)
     line(canvas, words("frame.head_right"), SIDE + 0.5 * ink.width, top, 0.5 * ink.width, 7.4, right=True)
-    line(canvas, words("frame.foot_left"), SIDE, low, 0.82 * ink.width, 6.8)
+    line(canvas, words("frame.foot_left"), SIDE, low, 0.87 * ink.width, 6.8)
     page = canvas.getPageNumber()
     ink.later.stamp(
         canvas,
@@ -133,7 +148,7 @@ def _head_and_foot(canvas: Any, ink: Ink, paper: tuple[float, float]) -> None:
         right,
         low,
         6.8,
-        0.17 * ink.width,
+        0.12 * ink.width,
         lambda pages: words("frame.foot_right", page=page, pages=pages),
         True,
     )

@@ -77,11 +77,15 @@ def settings_table(ink: Ink) -> Flow:
     return ink.table(heads, lines, (8.5, 6.5, 9, 13, 9.5, 16.5, 8.5, 9.5, 13, 6), "lcllrlrrll")
 
 
+def measured(result: StageResult, study: Study) -> str:
+    """What the stage measures, by its short name; the element's own where the stage does not say."""
+    element = study.device.element(result.stage.function)
+    return result.stage.quantity or (element.quantity if element else "")
+
+
 def quantity(result: StageResult, study: Study) -> str:
     """What the stage measures, in words; "any" or "all" of the lines where it is a quantity a line."""
-    stage = result.stage
-    element = study.device.element(stage.function)
-    measured = stage.quantity or (element.quantity if element else "")
+    stage, name = result.stage, measured(result, study)
     names = {"l-n": "L-N", "l-l": "L-L", "v0": "V0", "3v0": "3V0"}
     lines = f", {stage.phases} line" if stage.function in (Function.OVERVOLTAGE, Function.UNDERVOLTAGE) else ""
-    return names.get(measured, measured) + (f"{lines}s" if lines and stage.phases == "all" else lines)
+    return names.get(name, name) + (f"{lines}s" if lines and stage.phases == "all" else lines)

@@ -10,6 +10,10 @@ from relaycfg.sheet import figures
 from relaycfg.sheet.ink import Flow, Ink
 from relaycfg.sheet.settings_table import on
 
+_LEFT = 0.36
+
+NAMES_SHOWN = 8
+
 
 def sight(ink: Ink) -> Flow:
     """The places as a table, their boards as text, then asymmetry and coverage."""
@@ -31,8 +35,12 @@ def sight(ink: Ink) -> Flow:
         *ink.heading("sight_boards", 1, wording.text("sight.boards_title")),
         *(paragraph for s in summaries for paragraph in _boards(ink, s)),
         *ink.heading("sight_limits", 1, wording.text("sight.limits_title")),
-        ink.beside(_asymmetry(ink), _coverage(ink)),
-        ink.gap(4),
+        ink.beside(_asymmetry(ink), _coverage(ink), _LEFT),
+        ink.say("sight.basis", "small", site=study.site),
+        *ink.heading("sight_unexamined", 1, wording.text("sight.unexamined_title")),
+        ink.say("sight.unexamined_lead", "small"),
+        *ink.items("sight.unexamined", "tight"),
+        ink.gap(2),
         ink.say("sight.touch", "small"),
         *(ink.p(note, "small") for note in study.breaks.notes),
     ]
@@ -75,15 +83,21 @@ def _boards(ink: Ink, summary: PlaceSummary) -> Flow:
             "sight.boards",
             "small",
             s=summary,
-            harmed=", ".join(summary.boards_harmed),
-            healthy=", ".join(summary.boards_healthy),
-            left=", ".join(summary.not_disconnected),
+            harmed=_some(summary.boards_harmed),
+            healthy=_some(summary.boards_healthy),
+            left=_some(summary.not_disconnected),
         )
     ]
 
 
+def _some(boards: tuple[str, ...]) -> str:
+    """The names, or their first ones and how many there are where a list would drown the page."""
+    shown = ", ".join(boards[:NAMES_SHOWN])
+    return shown if len(boards) <= NAMES_SHOWN else f"{shown} and {len(boards) - NAMES_SHOWN} more"
+
+
 def _asymmetry(ink: Ink) -> Flow:
-    width = (ink.width - 14) / 2
+    width = (ink.width - 14) * _LEFT
     never = ink.wording.text("sight.never")
     rows = [
         [elements, never if k is None else f"{k:.2f} : 1 : 1"] for elements, k in ink.study.smallest_asymmetry.items()
@@ -92,6 +106,15 @@ def _asymmetry(ink: Ink) -> Flow:
 
 
 def _coverage(ink: Ink) -> Flow:
-    width = (ink.width - 14) / 2
-    rows = [[elements, figures.share(share)] for elements, share in ink.study.coverage.items()]
-    return ink.table(ink.wording.lines("sight.coverage_heads"), rows, (45, 55), "lr", width=width)
+    width = (ink.width - 14) * (1 - _LEFT)
+    rows = [
+        [
+            cover.elements,
+            ink.wording.text("sight.no_harm")
+            if cover.cleared_percent is None
+            else figures.by_unit(cover.cleared_percent, "%"),
+            figures.by_unit(cover.seen_percent, "%"),
+        ]
+        for cover in ink.study.coverage
+    ]
+    return ink.table(ink.wording.lines("sight.coverage_heads"), rows, (40, 30, 30), "lrr", width=width)

@@ -6,6 +6,7 @@ from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray
 from relaycfg.model.results import ClosedGroup, Finding, PlaceSummary
 from relaycfg.model.settings import Settings
+from relaycfg.study.coverage import cover_of
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.feeds import FeedRange
 from relaycfg.study.scenarios import Scenarios
@@ -43,7 +44,7 @@ def not_cleared(
                 Finding(
                     "exception",
                     f"break at {place}",
-                    f"break at {place}: {core} of {wanted} core scenarios are not cleared in time, up to "
+                    f"break at {place}: {core} of {wanted} core scenarios not cleared in time, up to "
                     f"{worst:.0f} V line to neutral, due within {deadline:g} s",
                     remedy,
                     "equipment stays on that voltage longer than it stands",
@@ -55,7 +56,7 @@ def not_cleared(
                     "warning",
                     f"break at {place}",
                     f"break at {place}: {zone} of {harmful - wanted} scenarios between the sustained voltage and the "
-                    "first point of the withstand curve are not cleared in time",
+                    "first point of the withstand curve not cleared in time",
                     "accept it in writing, or look at what blocks them",
                     "equipment may age or trip by itself",
                 )
@@ -69,6 +70,24 @@ def not_cleared(
                     "not cleared",
                     "check the load kinds of the loads that are on in these states",
                     "nothing is known of these states",
+                )
+            )
+    return found
+
+
+def useless_stages(evidence: Evidence, active: tuple[ActiveStage, ...]) -> list[Finding]:
+    """Stages that are on and clear nothing in time."""
+    found = []
+    for a in active:
+        cover = cover_of(evidence, a.stage.label, (a,))
+        if cover.cleared_percent == 0:
+            found.append(
+                Finding(
+                    "warning",
+                    a.stage.label,
+                    f"{a.stage.label} clears no harmful state in time; seen: {cover.seen_percent:.1f} % of all states",
+                    "lower its pickup or its delay, or switch it off knowingly",
+                    "it adds nothing against a lost neutral",
                 )
             )
     return found

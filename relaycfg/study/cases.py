@@ -151,13 +151,14 @@ def _fault(site: Site, levels: Levels, board: str, fault: Fault) -> Case:
         ends = {where: ohm if ohm != 0 else STIFF_OHM for where, ohm in ends.items()}
     pe = short_circuit(site, fault.board, "L-N", ends["far"], levels.upper)[fault.board][-1]
     kinds = tuple(k for k in FAULT_KINDS if k != "L-PE" or not np.isnan(pe))
+    # Without loads the network is linear, so the lower limit is the upper one scaled.
+    lower = abs(levels.lower[0]) / abs(levels.upper[0])
     courses = []
-    for level, emf in (("upper limit", levels.upper), ("lower limit", levels.lower)):
-        for where, ohm in ends.items():
-            for kind in kinds:
-                taps = short_circuit(site, fault.board, kind, ohm, emf)
-                label = f"{kind} {where} end, {level}"
-                courses.append(Course(label, (Segment(fault.clearing_s, taps[board]),)))
+    for where, ohm in ends.items():
+        for kind in kinds:
+            at_upper = short_circuit(site, fault.board, kind, ohm, levels.upper)[board]
+            for level, volts in (("upper limit", at_upper), ("lower limit", at_upper * lower)):
+                courses.append(Course(f"{kind} {where} end, {level}", (Segment(fault.clearing_s, volts),)))
     magnitudes = np.abs(np.stack([c.segments[0].tap[:-1] for c in courses]))
     v0 = max(abs(c.segments[0].tap[:-1].mean()) for c in courses)
     return Case(

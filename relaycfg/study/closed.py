@@ -88,12 +88,17 @@ def _blocking(ladder: Ladder, scenario: Scenarios, mask: BoolArray) -> _Blocking
 
 def _blocker(ladder: Ladder, code: int) -> str:
     if code == OUT_OF_REACH:
-        return "the state does not reach its settable range"
+        return "out of its range"
     if code == STANDING:
         return ladder.runs.standing_name
     if code == NOTHING:
         return "its own shortest time"
     return ladder.runs.case_names[code]
+
+
+def _short(blocker: str) -> str:
+    """A blocking case by its number, anything else in its words."""
+    return blocker.split(",")[0] if blocker.startswith("case ") else blocker
 
 
 def _group(
@@ -110,9 +115,9 @@ def _group(
     if np.isfinite(volts):
         needs.append(f"{volts:.1f} V more sensitive" if volts >= 0.1 else "less than 0.1 V more sensitive")
     short = f"; nearest setting would have to be {' or '.join(needs)}" if needs else ""
-    blocked = "; ".join(f"{f} by {name}" for f, name in blockers.items())
+    blocked = "; ".join(f"{f}: {_short(name)}" for f, name in blockers.items())
     those = f"{states} scenarios" if states > 1 else "1 scenario"
-    sentence = f"break at {place}: {those} up to {worst:.0f} V that nothing clears, blocked: {blocked}{short}"
+    sentence = f"break at {place}: {those} up to {worst:.0f} V that no secure setting clears ({blocked}){short}"
     return ClosedGroup(
         blockers,
         states,

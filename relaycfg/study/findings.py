@@ -3,7 +3,7 @@
 from relaycfg.model.geometry import BoolArray
 from relaycfg.model.results import CaseResult, ClosedGroup, Finding, PlaceSummary
 from relaycfg.model.settings import Settings
-from relaycfg.study.break_findings import blind, floating_feeds, not_cleared, places_findings
+from relaycfg.study.break_findings import blind, floating_feeds, not_cleared, places_findings, useless_stages
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.feeds import FeedRange
 from relaycfg.study.margins import Security
@@ -27,12 +27,13 @@ def findings(
 ) -> tuple[Finding, ...]:
     """All findings, exceptions first; ``existing`` settings also get what to turn to what."""
     found = [
+        *(device_limits(evidence, settings) if existing else ()),
         *insecure(evidence, settled, active, securities, cases, existing),
         *failed_cases(cases, active, securities),
         *not_cleared(evidence, settled, settings, left, closed, existing),
         *blind(evidence, settings, active),
+        *(useless_stages(evidence, active) if existing else ()),
         *floating_feeds(feeds),
-        *(device_limits(evidence, settings) if existing else ()),
         *rules(evidence, settings, existing),
         *places_findings(places),
         *_warnings(evidence),

@@ -85,10 +85,17 @@ class Ladder:
         """The hold time of the chosen reset."""
         return self.element.hold_s if self.reset == "held" else 0.0
 
+    @cached_property
+    def _reaches(self) -> dict[float, RideThrough]:
+        """R by margin: the choice asks for the same few margins many times."""
+        return {}
+
     def ride_through(self, margin_units: float = 0.0) -> RideThrough:
         """R [rungs] of the most sensitive pickups, moved by ``margin_units`` towards normal volts."""
-        pickup = self.sensitive - margin_units * self.unit
-        return ride_through(self.runs, pickup, pickup * self.dropout_ratio, self.hold_s)
+        if margin_units not in self._reaches:
+            pickup = self.sensitive - margin_units * self.unit
+            self._reaches[margin_units] = ride_through(self.runs, pickup, pickup * self.dropout_ratio, self.hold_s)
+        return self._reaches[margin_units]
 
     def fastest(self, margin_units: float = 0.0) -> NDArray[np.intp]:
         """Index of the shortest delay [rungs] that stays secure at ``margin_units`` (len(delays): none does).

@@ -41,10 +41,10 @@ class Security:
 def security(active: ActiveStage) -> Security:
     """Security of a stage at its most sensitive, against every hold case."""
     runs, band = active.ladder.runs, active.sensitive
-    shift = _failing_shift(active, runs)
-    worst = int(np.argmin(shift)) if len(shift) else STANDING
+    shift = _failing_shift(active, runs.only(runs.front))
+    worst = int(runs.front[np.argmin(shift)]) if len(shift) else STANDING
     standing_shift = band.pickup - runs.standing
-    least = min(float(shift[worst]) if worst != STANDING else np.inf, standing_shift)
+    least = min(float(shift.min(initial=np.inf)), standing_shift)
     volts_case = runs.standing_name if standing_shift <= least else behind_name(runs, worst)
     ratio = active.stage.dropout_ratio
     if abs(least - (band.pickup - runs.standing / ratio)) < SAME and ratio != 1:
@@ -75,12 +75,12 @@ def as_set(active: ActiveStage, shift: float) -> float:
 def _by_case(active: ActiveStage) -> dict[int, tuple[float | None, float | None]]:
     """Each passing case on its own: what stands before and after it is another case's matter."""
     runs, band = replace(active.ladder.runs, standing=-np.inf), active.sensitive
-    here = run_lengths(runs, np.array([band.pickup]), np.array([band.dropout]), active.hold_s)[:, 0]
-    shift = _failing_shift(active, runs)
+    numbers = np.array(runs.cases)
     found: dict[int, tuple[float | None, float | None]] = {}
     for number in dict.fromkeys(runs.cases):
-        mine = np.array([c == number for c in runs.cases])
-        least, stays = float(shift[mine].min()), float(here[mine].max())
+        mine = runs.only(np.flatnonzero(numbers == number))
+        here = run_lengths(mine, np.array([band.pickup]), np.array([band.dropout]), active.hold_s)
+        least, stays = float(_failing_shift(active, mine).min()), float(here.max())
         found[number] = (
             as_set(active, least) if np.isfinite(least) else None,
             band.delay_s - stays if stays > 0 else None,

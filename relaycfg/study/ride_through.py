@@ -1,6 +1,7 @@
 """Ride-through R: how long the must-hold cases keep an element picked up, for every pickup at once."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -34,6 +35,35 @@ class Runs:
     shared: bool
     every: bool = False
     """One counter that runs only while all channels are picked up (a stage set to all phases)."""
+
+    @cached_property
+    def front(self) -> NDArray[np.intp]:
+        """Indices of the courses that can stand behind R: none of them is milder and shorter than another.
+
+        Only courses of one piece are compared; where one is as severe on every channel and lasts as long as another,
+        whatever the other picks up it picks up too, and holds longer.
+        """
+        single = (self.duration_s > 0).sum(axis=1) == 1
+        piece = np.argmax(self.duration_s > 0, axis=1)
+        severity = self.severity[np.arange(len(single)), piece]
+        seconds = self.duration_s[np.arange(len(single)), piece]
+        kept: list[int] = []
+        for k in np.lexsort((np.arange(len(single)), -seconds, -severity.max(axis=-1))):
+            rivals = [j for j in kept if single[j]]
+            beaten = (seconds[rivals] >= seconds[k]) & (severity[rivals] >= severity[k]).all(axis=-1)
+            if not (single[k] and beaten.any()):
+                kept.append(int(k))
+        return np.sort(np.array(kept, np.intp))
+
+    def only(self, courses: NDArray[np.intp]) -> "Runs":
+        """The same with some of the courses."""
+        return replace(
+            self,
+            severity=self.severity[courses],
+            duration_s=self.duration_s[courses],
+            names=tuple(self.names[k] for k in courses),
+            cases=tuple(self.cases[k] for k in courses),
+        )
 
 
 @dataclass(frozen=True)
@@ -121,10 +151,10 @@ def ride_through(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: fl
 
     Infinite where the standing severity itself picks up.
     """
-    each = run_lengths(runs, pickup, dropout, hold_s)
-    behind = np.argmax(each, axis=0)
-    seconds = each[behind, np.arange(len(pickup))]
-    behind = np.where(seconds > 0, behind, NOTHING)
+    each = run_lengths(runs.only(runs.front), pickup, dropout, hold_s)
+    worst = np.argmax(each, axis=0)
+    seconds = each[worst, np.arange(len(pickup))]
+    behind = np.where(seconds > 0, runs.front[worst], NOTHING)
     stands = runs.standing >= pickup
     return RideThrough(np.where(stands, np.inf, seconds), np.where(stands, STANDING, behind))
 

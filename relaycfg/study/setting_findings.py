@@ -27,6 +27,13 @@ def turn(evidence: Evidence, old: Stage | None, new: Stage) -> str:
         parts.append(f"its delay from {old.delay_s:g} to {new.delay_s:g} s")
     if old.dropout_ratio != new.dropout_ratio:
         parts.append(f"its drop-out from {old.dropout_ratio:g} to {new.dropout_ratio:g}")
+    for what, before, after in (
+        ("reset", old.reset, new.reset),
+        ("phases", old.phases, new.phases),
+        ("action", old.action, new.action),
+    ):
+        if before != after:
+            parts.append(f"its {what} from {before} to {after}")
     return f"{old.label}: turn {', '.join(parts)}" if parts else f"{old.label}: leave as it is"
 
 
@@ -135,29 +142,32 @@ def device_limits(evidence: Evidence, settings: Settings) -> list[Finding]:
         if not stage.on:
             continue
         if ladder is None:
-            found.append(_limit(stage, "the device has no such element", "remove it"))
+            found.append(_limit(stage, "the device has no such element", "remove this stage"))
             continue
         element = ladder.element
         if stage.number > element.stages:
-            found.append(_limit(stage, f"the element has {element.stages} stage(s)", "remove it"))
+            found.append(_limit(stage, f"the element has {element.stages} stage(s)", "remove this stage"))
+            continue
         if not element.pickup.holds(stage.pickup):
-            found.append(_limit(stage, f"pickup {stage.pickup:g} is not on {_range(element.pickup)}", "settle it"))
+            found.append(_off_step(stage, "pickup", stage.pickup, element.pickup))
         if not element.delay_s.holds(stage.delay_s):
-            found.append(_limit(stage, f"delay {stage.delay_s:g} s is not on {_range(element.delay_s)}", "settle it"))
+            found.append(_off_step(stage, "delay", stage.delay_s, element.delay_s))
         if stage.dropout_ratio not in element.dropout_ratio:
             offered = ", ".join(f"{r:g}" for r in element.dropout_ratio)
-            found.append(_limit(stage, f"drop-out {stage.dropout_ratio:g} is not one of {offered}", "settle it"))
+            nearest = min(element.dropout_ratio, key=lambda r: abs(r - stage.dropout_ratio))
+            sentence = f"drop-out {stage.dropout_ratio:g} is not one of {offered}"
+            found.append(_limit(stage, sentence, f"the nearest the device has is {nearest:g}"))
     return found
 
 
-def _range(settable: SettableRange) -> str:
-    return f"{settable.low:g} to {settable.high:g} by {settable.step:g}"
+def _off_step(stage: Stage, what: str, value: float, settable: SettableRange) -> Finding:
+    span = f"{settable.low:g} to {settable.high:g} by {settable.step:g}"
+    nearest = settable.values[np.argmin(np.abs(settable.values - value))]
+    return _limit(stage, f"{what} {value:g} is not on {span}", f"the nearest the device has is {nearest:g}")
 
 
 def _limit(stage: Stage, sentence: str, do: str) -> Finding:
-    return Finding(
-        "exception", stage.label, f"{stage.label}: {sentence}", f"{do} on a value the device has", "it cannot be set"
-    )
+    return Finding("exception", stage.label, f"{stage.label}: {sentence}", do, "it cannot be set as it stands")
 
 
 def rules(evidence: Evidence, settings: Settings, existing: bool) -> list[Finding]:

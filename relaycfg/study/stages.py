@@ -49,7 +49,7 @@ def active_stages(evidence: Evidence, settings: Settings) -> tuple[ActiveStage, 
     found = []
     for stage in settings.stages:
         ladder = evidence.ladders.get(stage.function)
-        if not stage.on or ladder is None or stage.action == "alarm":
+        if not stage.on or ladder is None or stage.action == "alarm" or stage.number > ladder.element.stages:
             continue
         if stage.phases == "all":
             ladder = replace(ladder, runs=replace(ladder.runs, every=True))

@@ -3,47 +3,63 @@
 from collections.abc import Sequence
 
 from relaycfg import units
-from relaycfg.model.results import BoardVolts, BreakRow, BreakStudy, PlaceSummary
+from relaycfg.model.results import BreakRow, BreakStudy, PlaceSummary
 from relaycfg.model.site import NONE, Site
-from relaycfg.text.figures import place, share
-from relaycfg.text.layout import heading, listing, short, shown, table, wrapped
+from relaycfg.text.figures import FLAGS, UNBALANCES, counted, place, share, together
+from relaycfg.text.layout import heading, listing, shortened, shown, table, wrapped
 
-MOST = 7
-"""Places (and notes) shown without --all."""
-NAME = 14
-"""Characters of a name in a table of figures."""
+SCREEN = 60
+"""Lines without --all."""
+SHOWN = ((7, 3), (6, 2), (5, 2), (4, 1), (3, 1), (2, 1), (1, 1))
+"""Places shown without --all, and those with sentences (and notes): the first pair that fits; long names take more."""
+NAME = 24
+"""Characters of a place's name beside a sentence."""
 
 
 def breaks_text(site: Site, study: BreakStudy, everything: bool = False) -> str:
     """At most sixty lines; ``everything`` lists every state and board."""
-    most = len(study.rows) + len(study.summaries) + 1 if everything else MOST
+    if everything:
+        most = len(study.rows) + len(study.summaries) + len(study.notes) + 1
+        return "\n".join(_lines(site, study, most, most, True)) + "\n"
+    lines: list[str] = []
+    for most, few in SHOWN:
+        lines = _lines(site, study, most, few, False)
+        if len(lines) <= SCREEN:
+            break
+    return "\n".join(lines) + "\n"
+
+
+def _lines(site: Site, study: BreakStudy, most: int, few: int, everything: bool) -> list[str]:
+    """The text with the first ``most`` places, and the first ``few`` of what takes more than a line each."""
     lines = wrapped(_opening(site, study))
     lines += _unseen(study, most)
     states = list(dict.fromkeys(row.state for row in study.rows))
     if states:
-        lines += _state(site, [row for row in study.rows if row.state == states[0]], most)
-    lines += _sampled(study.summaries, most)
+        first = [row for row in study.rows if row.state == states[0]]
+        lines += [*_state(site, first, most), *_legend(study.rows if everything else first[:most])]
+    lines += _sampled(study.summaries, most, few)
     if study.notes:
         lines += heading("Notes")
-        for note in study.notes[: most if everything else 3]:
+        for note in study.notes[:few]:
             lines += wrapped(note, "* ")
-        lines += _more(len(study.notes), most if everything else 3)
+        lines += _more(len(study.notes), few)
     if everything:
         for row in study.rows:
             lines += _boards(row)
     elif len(states) > 1:
         lines += ["", f"{len(states)} load states computed, the first is shown; --all lists every state and board."]
-    return "\n".join(lines) + "\n"
+    return lines
 
 
 def unseen_rows(summaries: Sequence[PlaceSummary]) -> list[list[str]]:
     """Places whose break the relay cannot see, and why."""
-    return [[short(place(s.at), NAME), s.conductor, s.why_not] for s in summaries if not s.seen]
+    names = shortened([place(s.at) for s in summaries], NAME)
+    return [[names[place(s.at)], s.conductor, s.why_not] for s in summaries if not s.seen]
 
 
 def _opening(site: Site, study: BreakStudy) -> str:
     where = site.document.site or site.document.title or "This site"
-    count = f"{study.places} place{'s' if study.places != 1 else ''} where the neutral can break"
+    count = f"{counted(study.places, 'place')} where the neutral can break"
     if site.relay is None:
         return f"{where}: {count}; no relay is described, so nothing is seen."
     return f"{where}: relay {site.relay.name} at {site.relay.measures_at} sees {study.seen_places} of {count}."
@@ -58,31 +74,40 @@ def _unseen(study: BreakStudy, most: int) -> list[str]:
 
 
 def _state(site: Site, rows: list[BreakRow], most: int) -> list[str]:
-    """One load state at every place: the worst board, the relay's terminals, metalwork."""
+    """One load state at every place: the worst board, the relay's terminals, metalwork or the joint."""
     joint_ohm = rows[0].joint_ohm
     what = "neutral open" if joint_ohm is None else f"neutral joint of {units.ohms(joint_ohm)} ohm"
     names = site.supply.geometry.names
     relay = site.relay.name if site.relay is not None else ""
     heads = ["Place", "Wire", "Worst board", *names]
-    heads += [*("at relay" if k == 0 else n for k, n in enumerate(names)), "V0"] if relay else []
+    heads += [*(f"relay {name}" for name in names), "V0"] if relay else []
     heads += ["PE-earth"] if joint_ohm is None else ["A", "W"]
     cells = []
     for row in rows[:most]:
         board = max(row.boards, key=lambda b: max(row.boards[b].l_n_v))
-        line = [short(place(row.at), NAME), row.conductor, short(board, NAME)]
+        line = [place(row.at), row.conductor or units.ABSENT, board]
         line += [units.volts(v) for v in row.boards[board].l_n_v]
         if relay:
             line += [*(units.volts(v) for v in row.relays[relay].l_n_v), units.volts(row.relays[relay].v0_v)]
-        line += (
-            [units.volts(touch_v(row))] if joint_ohm is None else [units.amperes(row.joint_a), units.watts(row.joint_w)]
-        )
+        joint = [units.amperes(row.joint_a), units.watts(row.joint_w)]
+        line += [units.volts(touch_v(row))] if joint_ohm is None else joint
         cells.append(line)
-    lines = [*heading(f"State {rows[0].state}, {what}, V"), *table(heads, cells, 3), *_more(len(rows), most)]
+    among = [board.name for board in site.boards]
+    lines = heading(f"State {rows[0].state}, {what}, V")
+    lines += [*table(heads, cells, 3, (0, 2), among), *_more(len(rows), most)]
+    remarks: dict[str, list[str]] = {}
     for row in rows[:most]:
-        remarks = ([row.status] if row.status != "converged" else []) + list(row.flags)
-        if remarks:
-            lines += wrapped(f"{place(row.at)}: {', '.join(remarks)}", "! ")
+        remark = ", ".join(([row.status] if row.status != "converged" else []) + list(row.flags))
+        remarks.setdefault(remark, []).append(place(row.at))
+    for remark, at in remarks.items():
+        lines += wrapped(f"{'; '.join(at)}: {remark}", "! ") if remark else []
     return lines
+
+
+def _legend(rows: Sequence[BreakRow]) -> list[str]:
+    """What the flags of these rows mean."""
+    raised = {flag for row in rows for flag in row.flags}
+    return [line for flag, words in FLAGS.items() if flag in raised for line in wrapped(f"{flag}: {words}")]
 
 
 def touch_v(row: BreakRow) -> float | None:
@@ -91,7 +116,7 @@ def touch_v(row: BreakRow) -> float | None:
     return max(known) if known else None
 
 
-def _sampled(summaries: Sequence[PlaceSummary], most: int) -> list[str]:
+def _sampled(summaries: Sequence[PlaceSummary], most: int, few: int) -> list[str]:
     if not summaries:
         return []
     heads = ["Place", "Harmful", "Undetected", "Median", "95 %", "Most V", "PE V", "Unres."]
@@ -99,17 +124,26 @@ def _sampled(summaries: Sequence[PlaceSummary], most: int) -> list[str]:
     for s in summaries[:most]:
         highest = s.percentiles[0] if s.percentiles else None
         points = (highest.p50, highest.p95, highest.largest) if highest else (None, None, None)
-        hidden = share(s.undetected) if s.undetected.count or not s.seen else units.ABSENT
+        hidden = "depends on settings" if s.seen and not s.classes else share(s.undetected)
         touch, lost = units.volts(s.touch_v), units.count(s.unresolved)
-        rows.append([short(place(s.at), NAME), share(s.harmful), hidden, *map(units.volts, points), touch, lost])
+        rows.append([place(s.at), share(s.harmful), hidden, *map(units.volts, points), touch, lost])
     lines = heading(f"Over {units.count(summaries[0].samples)} sampled load states, highest line-to-neutral anywhere")
-    lines += [*table(heads, rows), *_more(len(summaries), most)]
+    lines += [*table(heads, rows, among=[s.at for s in summaries]), *_more(len(summaries), most)]
     lines += wrapped("Shares are of modelled load states with their 95 % interval, not probabilities of damage.")
-    harmed = [s for s in summaries if s.boards_harmed][: most // 2]
-    for s in harmed:
+    harmed = [s for s in summaries if s.boards_harmed]
+    for s in harmed[:few]:
         elsewhere = f"; not disconnected by the relay: {shown(s.not_disconnected, 4)}" if s.not_disconnected else ""
-        lines += wrapped(f"{place(s.at)}: harm at {shown(s.boards_harmed, 4)}{elsewhere}", "  ")
-    return lines
+        lines += wrapped(f"{place(s.at)}: harm at {shown(s.boards_harmed, 4)}{elsewhere}{_worst(s)}", "  ")
+    again = next((s.worst[0].index for s in harmed if s.worst), None)
+    return (
+        lines if again is None else [*lines, f'A sampled state is shown again by its number: --state "sample {again}"']
+    )
+
+
+def _worst(summary: PlaceSummary) -> str:
+    """Where and in which sampled state the volts are highest."""
+    worst = summary.worst[0] if summary.worst else None
+    return "" if worst is None else f"; highest at {worst.board} {worst.line} in sample {worst.index}"
 
 
 def _boards(row: BreakRow) -> list[str]:
@@ -120,26 +154,24 @@ def _boards(row: BreakRow) -> list[str]:
     companion = row.all_impedance.boards if row.all_impedance is not None else {}
     cells = [
         [
-            short(name, NAME),
-            _together(b.l_n_v),
-            _together(b.l_l_v),
+            name,
+            together(b.l_n_v),
+            together(b.l_l_v),
             units.volts(b.v0_v),
             units.volts(b.n_earth_v),
             units.volts(b.pe_earth_v),
             units.amperes(b.neutral_a),
-            _together(_l_n(companion, name)),
+            together(companion[name].l_n_v if name in companion else ()),
         ]
         for name, b in row.boards.items()
     ]
-    return lines + table(heads, cells)
-
-
-def _l_n(boards: dict[str, BoardVolts], name: str) -> tuple[float, ...]:
-    return boards[name].l_n_v if name in boards else ()
-
-
-def _together(values: Sequence[float]) -> str:
-    return "/".join(f"{v:.0f}" for v in values) if values else units.ABSENT
+    lines += table(heads, cells)
+    for name, at in row.relays.items():
+        unbalance = ", ".join(
+            f"{words} {units.with_unit(at.unbalance_percent.get(key), '%')}" for key, words in UNBALANCES.items()
+        )
+        lines += wrapped(f"At relay {name}: N-PE {units.with_unit(at.n_pe_v, 'V')}; unbalance: {unbalance}")
+    return lines
 
 
 def _more(count: int, most: int) -> list[str]:

@@ -9,7 +9,7 @@ def check_text(study: Study) -> str:
     """Exceptions, failing cases, the settings and their margins, breaks place by place, what is not detected."""
     lines = [*identity(study), *verdict(study)]
     lines += findings(study.findings, "exception", "warning")
-    lines += [*failing_cases(study.cases), *settings_table(study), *margins(study.stages)]
+    lines += [*failing_cases(study.cases), *settings_table(study), *margins(study.stages, alone=True)]
     lines += passing_cases(study.cases)
     lines += [*break_classes(study), *coverage(study), *blind_spots(study), *findings(study.findings, "note")]
     return "\n".join(lines) + "\n"

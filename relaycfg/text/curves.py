@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from relaycfg import units
 from relaycfg.model.device import Function
 from relaycfg.model.results import Corridor, CurveStep, Study
-from relaycfg.text.figures import unit_of
+from relaycfg.text.figures import unit_of, waiting
 from relaycfg.text.layout import heading, listing, wrapped
 
 
@@ -38,9 +38,5 @@ def _steps(title: str, heads: Sequence[str], steps: Sequence[CurveStep]) -> list
             kept.append(step)
     if not kept:
         return [f"{title}: nothing limits it"]
-    rows = [[units.volts(abs(s.pickup)), _time(s.seconds), s.behind] for s in kept]
+    rows = [[units.volts(abs(s.pickup)), waiting(s.seconds), s.behind] for s in kept]
     return [f"{title}:", *listing(heads, rows, 0)]
-
-
-def _time(seconds: float | None) -> str:
-    return units.FOR_EVER if seconds is None else units.seconds(seconds)

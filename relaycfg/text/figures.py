@@ -1,8 +1,10 @@
-"""Results as short words: shares, pickups, places, margins; all rounding is that of ``units``."""
+"""Results in words: shares, pickups, places, margins, states; all rounding is that of ``units``."""
+
+from collections.abc import Sequence
 
 from relaycfg import units
 from relaycfg.model.device import Function
-from relaycfg.model.results import Share, StageResult
+from relaycfg.model.results import CaseResult, Flag, Operated, Share, StageResult
 from relaycfg.model.site import NONE, SOURCE
 
 PLACES = {SOURCE: "star link", NONE: "no break"}
@@ -11,6 +13,21 @@ PLACES = {SOURCE: "star link", NONE: "no break"}
 def place(name: str) -> str:
     """A break place in words."""
     return PLACES.get(name, name)
+
+
+def or_dash(text: str) -> str:
+    """The text, or a dash where there is none."""
+    return text or units.ABSENT
+
+
+def counted(number: int, one: str, several: str = "") -> str:
+    """A number with its noun, such as 1 scenario or 2 scenarios."""
+    return f"{units.count(number)} {one if number == 1 else several or one + 's'}"
+
+
+def together(values: Sequence[float]) -> str:
+    """The volts of all lines in one cell."""
+    return or_dash("/".join(units.whole_volts(v) for v in values))
 
 
 def share(value: Share) -> str:
@@ -49,7 +66,63 @@ def reset(result: StageResult) -> str:
     return f"held {units.seconds(stage.hold_s)} s" if stage.reset == "held" else stage.reset
 
 
+def waiting(seconds: float | None) -> str:
+    """Seconds of a curve, where none is without end."""
+    return units.FOR_EVER if seconds is None else units.seconds(seconds)
+
+
 def margin(in_units: float | None, distance: float | None, unit: str, time_s: float | None) -> str:
     """A margin in units, volts and seconds; those that nothing limits are left out."""
     every = [units.with_unit(in_units, "units"), units.with_unit(distance, unit), units.with_unit(time_s, "s")]
     return ", ".join(figure for figure in every if figure != units.ABSENT) or "nothing limits it"
+
+
+def class_words(name: str) -> str:
+    """A class of break states, such as "high volts / in time", in words."""
+    harm, _, operation = name.partition(" / ")
+    does = "tripped" if harm == "none" else "cleared"
+    done = {"in time": f"{does} in time", "late": f"{does} late", "none": f"not {does}"}[operation]
+    return f"{'no harm yet' if harm == 'none' else harm}, {done}"
+
+
+STATUSES = {
+    "read": "read",
+    "quoted": "as quoted",
+    "memory": "from memory, verify",
+    "own": "own",
+    "user": "given by the user",
+    "computed": "computed",
+    "assumed": "assumed",
+}
+"""How well a figure is known, in words."""
+
+
+def cited(source: str, status: str) -> str:
+    """Source and status in brackets, to stand behind a figure; nothing where neither is known."""
+    known = "; ".join(part for part in (source, STATUSES.get(status, status)) if part)
+    return f" [{known}]" if known else ""
+
+
+def operated(case: CaseResult) -> str:
+    """Which stages operated in a case, when, and in which of its courses."""
+    return "; ".join(_operated(one) for one in case.operated) or "nothing operates"
+
+
+def _operated(one: Operated) -> str:
+    course = f" ({one.course})" if one.course else ""
+    return f"{one.stage} after {units.with_unit(one.seconds, 's')}{course}"
+
+
+UNBALANCES = {
+    "l_n_deviation": "line-to-neutral deviation",
+    "l_l_deviation": "line-to-line deviation",
+    "v2_v1": "V2/V1",
+    "spread": "spread",
+}
+"""The four unbalance figures by their names in the results."""
+FLAGS: dict[Flag, str] = {
+    "below band": "some load gets less than the volts its law holds for; it is a constant impedance there",
+    "above band": "some load gets more than the volts its law holds for; it is a constant impedance there",
+    "unstable": "the loads would run away from this state",
+    "several solutions": "the loads allow another state too; the one reached from the sound neutral is shown",
+}

@@ -1,11 +1,13 @@
-"""Results as plain JSON values: null for what is absent or infinite, keys named as in the model."""
+"""Results as plain JSON values: null for what is absent or infinite, keys named as in the model and the files."""
 
 import dataclasses
 import math
 from enum import Enum
 from typing import Any
 
-from relaycfg.model.results import BreakRow, BreakStudy, Study
+from relaycfg.model.device import Function
+from relaycfg.model.results import BreakRow, BreakStudy, StageResult, Study
+from relaycfg.model.settings import Settings, Stage
 
 SCHEMA = 1
 """Number of the published form (its JSON Schema is result.schema.json beside this file)."""
@@ -18,30 +20,34 @@ def breaks_dict(study: BreakStudy, program: str, input_digest: str, seed: int, s
 
 
 def study_dict(study: Study, program: str, explain: bool = False) -> dict[str, Any]:
-    """Result of ``derive`` or ``check``; ``explain`` adds the curves R and W."""
-    settings = study.settings
+    """Result of ``derive`` or ``check``; ``explain`` adds the corridors (curves R and W) and the V0 plane.
+
+    Every field of the study stands under its own name, but site and device (the inputs), breaks (its rows, with the
+    summaries beside them) and stages (in the settings).
+    """
     result = breaks_dict(study.breaks, program, study.input_digest, study.seed, study.samples)
     result |= {
         "kind": study.kind,
         "exceptions": study.exceptions,
         "findings": plain(study.findings),
-        "settings": {
-            "for_relay": settings.for_relay,
-            "device": settings.device,
-            "inhibit_s": plain(settings.inhibit_s),
-            "after_any_trip": settings.after_any_trip,
-            "stages": [_stage(plain(result)) for result in study.stages],
-        },
+        "settings": _settings(study.settings) | {"stages": [_stage(r) for r in study.stages]},
         "bounds": [{"stage": r.stage.label} | plain(b) for r in study.stages for b in r.bounds],
         "cases": plain(study.cases),
-        "coverage": {name: plain(share) for name, share in study.coverage.items()},
+        "coverage": plain(study.coverage),
         "smallest_asymmetry": plain(study.smallest_asymmetry),
-        "never_cleared": study.never_cleared,
+        "uncleared": study.uncleared,
+        "blocked": study.blocked,
         "closed": plain(study.closed),
+        "displacement_standing_v": plain(study.displacement_standing_v),
+        "feed_range_v": [
+            {"feed": what, "lowest_v": plain(lowest), "highest_v": plain(highest)}
+            for what, lowest, highest in study.feed_range_v
+        ],
+        "worked": plain(study.worked),
         "tests": plain(study.tests),
     }
     if explain:
-        result["curves"] = plain(study.corridors)
+        result |= {"corridors": plain(study.corridors), "plane": plain(study.plane)}
     return result
 
 
@@ -80,10 +86,44 @@ def _row(row: BreakRow) -> dict[str, Any]:
     return form
 
 
-def _stage(form: dict[str, Any]) -> dict[str, Any]:
-    """A judged stage as one flat object; its bounds stand in a list of their own."""
-    del form["bounds"]
-    stage: dict[str, Any] = form.pop("stage")
-    base = {"pickup_percent": form.pop("pickup_percent"), "base": form.pop("base")}
-    del stage["pickup_percent"]
-    return stage | base | form
+def _settings(settings: Settings) -> dict[str, Any]:
+    """All of the settings but their stages, with the digest that tells two sets of one site apart."""
+    form: dict[str, Any] = plain(settings)
+    del form["stages"]
+    return form | {"digest": settings.digest}
+
+
+def _stage(result: StageResult) -> dict[str, Any]:
+    """A judged stage as one flat object, named as in a settings file; its bounds stand in a list of their own.
+
+    ``pickup_v`` is there for all but 47, whose points are its ``pickup_percent``; other stages have that and
+    ``base_v`` where they are set so. Figures of a stage that is off are null where it keeps none.
+    """
+    stage = result.stage
+    points = stage.function is Function.UNBALANCE
+    pickup, delay_s, dropout = plain(stage.pickup), plain(stage.delay_s), plain(stage.dropout_ratio)
+    hold_s = plain(stage.hold_s)
+    form: dict[str, Any] = plain(result)
+    if not stage.on:
+        pickup, delay_s, hold_s = pickup or None, delay_s or None, hold_s or None
+        dropout = None if dropout == Stage.dropout_ratio else dropout
+        form |= dict.fromkeys(("pickup_low", "pickup_high", "clearing_s", "secure", "clears_percent"))
+    for apart in ("stage", "bounds"):
+        del form[apart]
+    return {
+        "function": stage.function.value,
+        "stage": stage.number,
+        "on": stage.on,
+        "pickup_v": None if points else pickup,
+        "pickup_percent": pickup if points else plain(stage.pickup_percent),
+        "base_v": plain(stage.base_v),
+        "quantity": None if points else stage.quantity,
+        "definition": stage.quantity if points else None,
+        "delay_s": delay_s,
+        "dropout_ratio": dropout,
+        "reset": stage.reset,
+        "hold_s": hold_s,
+        "phases": stage.phases,
+        "action": stage.action,
+        "percent_of_base": form.pop("pickup_percent"),
+    } | form

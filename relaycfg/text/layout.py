@@ -1,24 +1,44 @@
 """Aligned columns and wrapped sentences for a terminal of a hundred characters."""
 
 import textwrap
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 
 WIDTH = 100
 GAP = "  "
+CUT = ".."
+LEAST = 8
+"""Characters of a name that are always shown."""
 
 
-def table(heads: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1) -> list[str]:
-    """Lines of a table: the first ``left`` columns flush left, the others right, the last left if it is wider text.
+def table(
+    heads: Sequence[str],
+    rows: Sequence[Sequence[str]],
+    left: int = 1,
+    names: Collection[int] = (0,),
+    among: Sequence[str] = (),
+) -> list[str]:
+    """Lines of a table: the first ``left`` columns flush left, the others right.
 
-    Only the last column is shortened (with "..") where a line would pass the width; the first ones are wrapped by
-    the caller's choice of words.
+    Where it is wider than the terminal, the columns ``names`` are cut, the widest first, so that no figure is lost,
+    and so that names still differ from each other and from those ``among`` which they stand.
     """
     cells = [list(map(str, heads)), *(list(map(str, row)) for row in rows)]
     widths = [max(len(row[k]) for row in cells) for k in range(len(heads))]
+    while sum(widths) + len(GAP) * (len(widths) - 1) > WIDTH:
+        widest = max(names, key=lambda k: widths[k])
+        if widths[widest] <= max(LEAST, len(heads[widest])):
+            break
+        widths[widest] -= 1
+    cut = [k for k in names if widths[k] < max(len(row[k]) for row in cells)]
+    for k in cut:
+        widths[k] = min(widths[j] for j in cut)  # a name is cut the same way wherever it stands
+        known = shortened([*(row[k] for row in cells), *among], widths[k])
+        cells = [[*row[:k], known[row[k]], *row[k + 1 :]] for row in cells]
+    cells = [[short(c, w) for c, w in zip(row, widths, strict=True)] for row in cells]
     lines = []
     for row in cells:
         parts = [c.ljust(w) if k < left else c.rjust(w) for k, (c, w) in enumerate(zip(row, widths, strict=True))]
-        lines.append(_fit(GAP.join(parts).rstrip()))
+        lines.append(short(GAP.join(parts).rstrip(), WIDTH))
     return lines
 
 
@@ -42,8 +62,8 @@ def wrapped(sentence: str, first: str = "", rest: str | None = None) -> list[str
 
 
 def heading(title: str) -> list[str]:
-    """A blank line and a title in capitals at its first letter only, so that it reads in any terminal."""
-    return ["", title, "-" * len(title)]
+    """A blank line, the title, and a line under it."""
+    return ["", *wrapped(title), "-" * min(len(title), WIDTH)]
 
 
 def shown(names: Sequence[str], most: int) -> str:
@@ -52,10 +72,25 @@ def shown(names: Sequence[str], most: int) -> str:
     return ", ".join(names[:most]) + (f" and {more} more" if more > 0 else "")
 
 
+def shortened(names: Sequence[str], width: int) -> dict[str, str]:
+    """Each name within a width, cut in the middle where that keeps the most of them apart, marked where it was cut."""
+    long = [name for name in dict.fromkeys(names) if len(name) > width]
+    room = max(width - len(CUT), 1)
+    heads = [*range(room // 2, -1, -1), *range(room // 2 + 1, room + 1)]
+    forms = [{name: _middle(name, head, room) for name in long} for head in heads]
+    letters = enumerate(zip(*long, strict=False))
+    common = next((k for k, column in letters if len(set(column)) > 1), 0)
+    start = max(long[0][:common].rfind(" ") + 1 if long else 0, common - room // 2)
+    forms.append({name: short(CUT + name[start:], width) for name in long})
+    best = max(forms, key=lambda form: len(set(form.values())))
+    return {name: best.get(name, name) for name in names}
+
+
+def _middle(name: str, head: int, room: int) -> str:
+    """The first ``head`` characters and as many of the last as there is room for."""
+    return name[:head].rstrip() + CUT + name[len(name) - (room - head) :].lstrip()
+
+
 def short(text: str, width: int) -> str:
     """Text cut to a width, marked where it was cut."""
-    return text if len(text) <= width else text[: width - 2] + ".."
-
-
-def _fit(line: str) -> str:
-    return short(line, WIDTH)
+    return text if len(text) <= width else text[: width - len(CUT)] + CUT

@@ -44,7 +44,7 @@ def _figures(reading: Reading) -> list[str]:
     lines = wrapped(f"V0 {size} V (3V0 {residual} V); {band}.")
     lines += wrapped(f"Source {units.volts(reading.source_v)} V to its star point, from {reading.source_from}.")
     if reading.load_shares is not None:
-        angle = round(math.degrees(cmath.phase(neutral)))
+        angle = units.degrees(math.degrees(cmath.phase(neutral)))
         lines += wrapped(f"Neutral moved {size} V at {angle} degrees from the source volts of L1 (rotation L1-L2-L3).")
         loads = f"{_ratio(reading.load_shares)} on L1 : L2 : L3"
         lines += wrapped(f"Resistive loads of about {loads} would put it there.")
@@ -56,4 +56,4 @@ def _figures(reading: Reading) -> list[str]:
 def _ratio(shares: tuple[float, float, float]) -> str:
     least = min(shares)
     unit = least if least >= SMALL_SHARE * max(shares) else max(shares)
-    return " : ".join(f"{abs(round(s / unit, 1)):.1f}" for s in shares)
+    return " : ".join(units.parts(s / unit) for s in shares)

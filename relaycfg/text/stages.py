@@ -20,8 +20,7 @@ def identity(study: Study) -> list[str]:
 
 def verdict(study: Study) -> list[str]:
     """How many exceptions there are, and how much of the input is not the user's own."""
-    count = study.exceptions
-    found = "No exception" if not count else f"{count} exception{'s' if count != 1 else ''}"
+    found = figures.counted(study.exceptions, "exception") if study.exceptions else "No exception"
     inputs = study.site.inputs
     unowned = ", ".join(f"{n} {tag}" for tag in ("assumed", "default") if (n := sum(i.tag == tag for i in inputs)))
     known = f" Inputs: {unowned} of {len(inputs)}." if unowned else ""
@@ -79,8 +78,11 @@ def bounds(stages: Sequence[StageResult]) -> list[str]:
     return [*heading("Bounds"), *lines] if lines else []
 
 
-def margins(stages: Sequence[StageResult]) -> list[str]:
-    """Distance of each stage to the nearest must-hold case and to the nearest state it must clear."""
+def margins(stages: Sequence[StageResult], alone: bool = False) -> list[str]:
+    """Distance of each stage to the nearest must-hold case and to the nearest state it must clear.
+
+    ``alone`` adds what the stage clears on its own, which its reason says already.
+    """
     lines: list[str] = []
     for result in stages:
         m, unit = result.margins, figures.unit_of(result.stage.function)
@@ -88,7 +90,9 @@ def margins(stages: Sequence[StageResult]) -> list[str]:
             continue
         held = figures.margin(m.security_units, m.security_v, unit, m.security_s)
         cleared = figures.margin(m.dependability_units, m.dependability_v, unit, m.dependability_s)
-        share = f"; clears {figures.share(result.adds)} of the harmful states alone" if result.adds is not None else ""
+        share = ""
+        if alone and result.clears_percent is not None:
+            share = f"; alone it clears {units.percent(result.clears_percent)} % of the harmful states in time"
         clearing = f"total clearing {units.seconds(result.clearing_s)} s{share}"
         lines += wrapped(f"{result.stage.label}: {clearing}")
         lines += wrapped(f"{held} ({m.security_case})" if m.security_case else held, "    holds by   ")

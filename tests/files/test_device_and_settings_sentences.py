@@ -59,6 +59,23 @@ DEVICE_CASES = {
         "correct it or measures",
     ),
     "another version": ("schema = 1", "schema = 2", "relay.toml:1:1: schema is 2; give 1"),
+    "definition of a 59": (
+        "stages = 2", 'stages = 2\ndefinition = "spread"',
+        "relay.toml:8:1: element.59.definition is not used by a 59; remove it: it is for 47",
+    ),
+    "points of a 59": (
+        "accuracy = { pickup_percent = 1, time_s = 0.03 }\n\n",
+        "accuracy = { pickup_percent = 1, pickup_points = 1, time_s = 0.03 }\n\n",
+        "relay.toml:11:34: element.59.accuracy.pickup_points is not used by a 59; remove it: it is for 47",
+    ),
+    "base of volts": (
+        'max = 300, step = 1, unit = "v"', 'max = 300, step = 1, unit = "v", base_v = 230',
+        'relay.toml:8:56: element.59.pickup.base_v is not used by unit = "v"; remove it, or write unit = "percent"',
+    ),
+    "hold without held": (
+        "stages = 2", "stages = 2\nhold_s = 1",
+        'relay.toml:8:1: element.59.hold_s is not used without held; remove it, or add "held" to reset',
+    ),
 }  # fmt: skip
 SETTINGS = """\
 schema = 1
@@ -93,6 +110,10 @@ SETTINGS_CASES = {
         "pickup_v = 264", "pickup_percent = 110",
         "settings.toml:5:1: overvoltage.1.base_v is missing; give the volts that are 100 percent",
     ),
+    "base beside volts": (
+        "pickup_v = 264", "pickup_v = 264\nbase_v = 230",
+        "settings.toml:9:1: overvoltage.1.base_v is not used with pickup_v; remove it, or give pickup_percent",
+    ),
     "stage twice": (
         "delay_s = 0.6\n", "delay_s = 0.6\n[[overvoltage]]\nstage = 1\non = false\n",
         "settings.toml:11:1: overvoltage.1.stage is 1, given before; give every stage once",
@@ -113,6 +134,19 @@ def test_a_mistake_in_a_device_is_answered_word_for_word(bench, name):
     old, new, sentence = DEVICE_CASES[name]
     assert bench.device.count(old) == 1
     bench.put("relay.toml", bench.device.replace(old, new))
+    assert bench.sentences(bench.site + bench.relay) == [sentence]
+
+
+@pytest.mark.parametrize(
+    ("elements", "sentence"),
+    [
+        ("", "relay.toml: element is missing; write an [[element]] table"),
+        ("element = []\n", "relay.toml:5:1: element is empty; write an [[element]] table"),
+        ("[[elemnt]]\n", "relay.toml:5:1: elemnt is not a known key; did you mean element?"),
+    ],
+)
+def test_a_device_without_elements_is_asked_for_one(bench, elements, sentence):
+    bench.put("relay.toml", bench.device.split("\n[[element]]")[0] + "\n" + elements)
     assert bench.sentences(bench.site + bench.relay) == [sentence]
 
 

@@ -1,5 +1,8 @@
 """The ledger: every input is there, with its evidence or as a default with the source of what stands in."""
 
+import pytest
+
+from relaycfg.files.ledger import printed
 from relaycfg.files.tables import STATUSES
 
 TAGGED = """
@@ -11,6 +14,23 @@ note = "drawing 7"
 [[evidence]]
 of = "board.Workshop.cable.length_m"
 tag = "measured"
+"""
+MINIMAL = """\
+[supply]
+nominal_v = 230
+earthing = "TN-S"
+[[source]]
+kind = "transformer"
+rating_kva = 100
+[[board]]
+name = "B"
+fed_from = "source"
+[loads]
+file = "loads.csv"
+[[relay]]
+name = "R1"
+measures_at = "B"
+device = "relay.toml"
 """
 
 
@@ -79,15 +99,15 @@ def test_figures_from_memory_are_marked(bench):
     found = inputs(bench.read(bench.with_("impedance_percent = 4\n", "")))
     impedance = found["source.grid.impedance_percent"]
     assert (impedance.value, impedance.status) == ("4", "memory")
-    assert impedance.note == "IEC 60076-5, Table 1 (from memory, verify)"
+    assert impedance.note == "IEC 60076-5, Table 1"
     assert found["must_hold.interruption_s"].status == "memory"
 
 
 def test_a_default_that_several_loads_share_is_one_entry_that_names_them(bench):
     more = "".join(f'[[load]]\nboard = "MB"\nname = "L{i}"\nbetween = "L1-N"\nkw = 1\ndemand = 1\n' for i in range(6))
     found = inputs(bench.read(bench.site + more))
-    assert found["load.*.usage"].note == "own assumption (ours); for Kiln, L0, L1, L2 and 3 more"
-    assert found["load.*.demand"].note == "own assumption (ours); for Kiln"
+    assert found["load.*.usage"].note == "own assumption; for Kiln, L0, L1, L2 and 3 more"
+    assert found["load.*.demand"].note == "own assumption; for Kiln"
 
 
 def test_the_evidence_column_of_a_table_tags_its_loads(bench):
@@ -143,3 +163,58 @@ def test_the_digest_follows_the_loads_file_by_content(bench):
     assert bench.read(text).digest == digest
     bench.put("loads.csv", "board,name,between,kw\nMB,Saw,L2-N,1\n")
     assert bench.read(text).digest != digest
+
+
+def test_a_fifteen_line_site_runs_and_counts_what_it_leaves_out(bench):
+    bench.put("relay.toml", bench.device)
+    bench.put("loads.csv", "board,between,kw\nB,L1-N,1\n")
+    assert len(MINIMAL.splitlines()) == 15
+    site = bench.read(MINIMAL, need_relay=True)
+    defaults = [i for i in site.inputs if i.tag == "default"]
+    assert (len(site.inputs), len(defaults)) == (54, 38)
+    assert all(i.note and i.status in STATUSES for i in defaults)
+    assert site.warnings == ()
+
+
+def test_a_named_row_keeps_its_status_though_the_user_names_it(bench):
+    text = bench.site.replace("nominal_v = 230", 'nominal_v = 230\nband = "China, 220 V"')
+    text += '[equipment]\novervoltage = "household overvoltage envelope"\n[must_hold]\nsets = ["public supply"]\n'
+    text += '[[evidence]]\nof = "equipment.overvoltage"\ntag = "letter"\nnote = "owner"\n'
+    found = inputs(bench.read(text))
+    assert (found["supply.band"].tag, found["supply.band"].status) == ("assumed", "memory")
+    curve = found["equipment.overvoltage"]
+    assert (curve.tag, curve.status) == ("letter", "memory")
+    assert curve.note == "owner; EN 50550:2011; IEC 63052:2019 believed equal, Table 1"
+    assert found["must_hold.sets"].status == "memory"
+
+
+def test_a_scaled_curve_and_scaled_swells_say_by_what(bench):
+    site = bench.read(bench.with_("nominal_v = 230", "nominal_v = 120"))
+    found = inputs(site)
+    assert found["equipment.overvoltage"].note.endswith("Table 1, scaled by U0/230")
+    assert (found["equipment.overvoltage"].status, found["equipment.overvoltage"].tag) == ("memory", "default")
+    assert (found["equipment.scale"].value, found["equipment.scale"].status) == ("0.5217", "own")
+    assert site.equipment.source.endswith("scaled by U0/230")
+    assert {s[3] for s in site.reference.swells} == {"own", "memory"}
+    assert all(s[2].endswith(", scaled by U0/230") for s in site.reference.swells)
+    assert not any("scaled" in i.note for i in bench.read().inputs)
+
+
+def test_a_source_says_one_thing_about_how_it_is_known(bench):
+    texts = [i.note for i in bench.read().inputs] + [s[2] for s in bench.read().reference.swells]
+    assert not [t for t in texts if "(from memory" in t or "(as quoted" in t or "(ours" in t]
+
+
+@pytest.mark.parametrize(
+    ("value", "text"),
+    [(0.00833333, "0.0083"), (0.0125, "0.0125"), (0.0754, "0.0754"), (133.0434783, "133.04"), (400.0, "400"),
+     (12345.678, "12345.68"), (0.0, "0"), (0.00012345, "0.000123"), (-0.05, "-0.05")],
+)  # fmt: skip
+def test_numbers_carry_no_digits_nobody_can_measure(value, text):
+    assert printed(value) == text
+
+
+def test_a_third_harmonic_by_default_is_none_and_says_so(bench):
+    third = inputs(bench.read())["load.*.third_harmonic_percent"]
+    assert (third.value, third.tag) == ("0", "default")
+    assert third.note == "own assumption: 0 assumed; electronics may have much more; for Kiln"

@@ -62,11 +62,54 @@ CSV = {
         "board,between,kw,count\nMB,L1-N,2,1.5\n",
         "loads.csv:2:4 (count): count is 1.5; give a whole number, 1 to 10000"
     ),
+    "too large for a number": (
+        HEAD + "MB,a,L1-N,1e999\n", 'loads.csv:2:4 (kw): kw is "1e999"; write a number in kW'
+    ),
+    "bare numbers with a comma": (
+        'board,between,ohm\nMB,L1-N,"10, 2"\n',
+        'loads.csv:2:3 (ohm): ohm is "10, 2"; write two numbers, such as 10 2',
+    ),
+    "one number of two": (
+        "board,between,ohm\nMB,L1-N,[10]\n", 'loads.csv:2:3 (ohm): ohm is "[10]"; write two numbers, such as 10 2'
+    ),
+    "two shares of three": (
+        "board,between,kw,zip_p\nMB,L1-N,1,0.5 0.5\n",
+        'loads.csv:2:4 (zip_p): zip_p is "0.5 0.5"; write three numbers, such as 0.5 0.3 0.2',
+    ),
+    "a list without quotes": (
+        "board,between,ohm\nMB,L1-N,[10, 2]\n",
+        "loads.csv:2:3 (ohm): ohm is in a line of 4 cells under 3 column names; write two numbers, such as 10 2",
+    ),
+    "text behind quotes": (
+        HEAD + 'MB,"a"b,L1-N,2\n', "loads.csv:2: not CSV (text behind a closing quote); correct the line"
+    ),
+    "a character that turns the writing round": (
+        HEAD + "MB,a\u202eb,L1-N,2\n",
+        'loads.csv:2:2 (name): name is "a\\u202eb", with the control character U+202E right-to-left override; '
+        "write plain text",
+    ),
+    "an unknown kind": (
+        "board,between,kw,kind\nMB,L1-N,2,induction furnace\n",
+        'loads.csv:2:4 (kind): kind is "induction furnace"; give one of "resistive heater", "lighting mix", '
+        '"air conditioner", "refrigerator", "fan", "pump", "washing machine", "range", "dryer", '
+        '"water heater", "dishwasher", "heat-pump water heater", ...',
+    ),
+    "UTF-16 without a mark": (
+        HEAD.encode("utf-16-le"), "loads.csv:1:2: not UTF-8 text; save the file as UTF-8"
+    ),
+    "a spreadsheet by the name of a CSV": (
+        b"PK\x03\x04 and more",
+        "loads.csv: a spreadsheet (.xlsx), not a CSV file; name it loads.xlsx, or save it as CSV",
+    ),
+    "an old spreadsheet": (
+        b"\xd0\xcf\x11\xe0 and more",
+        "loads.csv: a spreadsheet of the old kind (.xls), not a CSV file; save it as .xlsx or CSV",
+    ),
     "neither true nor false": (
         "board,between,kw,minds_low_v\nMB,L1-N,2,maybe\n",
         'loads.csv:2:4 (minds_low_v): minds_low_v is "maybe"; write true or false',
     ),
-    "open quote": (HEAD + 'MB,"a,L1-N,2\n', "loads.csv:2: not CSV (unexpected end of data); correct the line"),
+    "open quote": (HEAD + 'MB,"a,L1-N,2\n', "loads.csv:2: not CSV (a quote that is not closed); correct the line"),
     "endless line": (
         HEAD + "x" * 1_000_000, "loads.csv:2:1: a line of 1000000 characters; write at most 10000 in a line"
     ),
@@ -89,7 +132,7 @@ def test_a_csv_in_another_encoding_says_where_it_begins(bench):
 def test_a_missing_loads_file_offers_its_neighbour(bench):
     bench.put("loads.csv", HEAD)
     assert bench.sentences(bench.site + '[loads]\nfile = "load.csv"\n') == [
-        "load.csv: not there; did you mean loads.csv?"
+        'site.toml:31:1: loads.file is "load.csv", not there; did you mean "loads.csv"?'
     ]
 
 
@@ -99,6 +142,23 @@ def test_the_caret_of_a_csv_stands_below_its_cell(bench):
         bench.read(bench.site + FILE)
     line, caret = caught.value.text().splitlines()[1:]
     assert line[caret.index("^") :] == "two"
+
+
+def test_line_ends_of_any_kind_are_read_alike(bench):
+    text = HEAD + '# note\nMB,"a, b",L1-N,2\nMB,c,L2-N,3\n'
+    read = []
+    for ends in ("\n", "\r\n", "\r"):
+        bench.put("loads.csv", text.replace("\n", ends))
+        read.append(bench.read(bench.site + FILE).loads)
+    assert read[0] == read[1] == read[2]
+    assert [load.name for load in read[0]] == ["a, b", "c", "Kiln"]
+
+
+@pytest.mark.parametrize("cell", ["10 2", '"[10, 2]"', '"[10,2]"', "[10 2]", "10;2"])
+def test_lists_are_read_as_in_toml_or_apart_by_blanks(bench, cell):
+    bench.put("loads.csv", f"board,between,ohm\nMB,L1-N,{cell}\n")
+    load = bench.read(bench.site + FILE).loads[0]
+    assert complex(load.p_w, load.q_var) == pytest.approx(230**2 / complex(10, -2))
 
 
 def workbook(rows):
@@ -136,8 +196,28 @@ def test_a_file_that_only_pretends_to_be_a_spreadsheet_is_refused(bench):
 def test_an_unknown_sheet_is_answered_with_those_there_are(bench):
     workbook([["board", "between", "kw"], ["MB", "L1-N", 2]])
     assert bench.sentences(bench.site + '[loads]\nfile = "loads.xlsx"\nsheet = "Load"\n') == [
-        'loads.xlsx: without a sheet Load; did you mean "Loads"?'
+        'site.toml:32:1: loads.sheet is "Load", no sheet of loads.xlsx; did you mean "Loads"?'
     ]
+
+
+@pytest.mark.parametrize(
+    ("rows", "sentence"),
+    [
+        (
+            [["board", "between", "kw"], ["MB", "L1-N", 2, None, "seen"]],
+            "loads.xlsx Loads!E2: a cell without a column name; name its column in line 1, or remove the cell",
+        ),
+        ([["board", "between", "kw"]], "loads.xlsx Loads: without loads; give a line a load"),
+        ([], "loads.xlsx Loads: empty; give a line of column names, then a line a load"),
+        (
+            [["board", "between", "ohm"], ["MB", "L1-N", 10]],
+            'loads.xlsx Loads!C2: ohm is "10"; write two numbers, such as 10 2',
+        ),
+    ],
+)
+def test_a_spreadsheet_is_spoken_of_as_one(bench, rows, sentence):
+    workbook(rows)
+    assert bench.sentences(bench.site + '[loads]\nfile = "loads.xlsx"\n') == [sentence]
 
 
 def test_csv_and_spreadsheet_give_the_same_loads(bench):

@@ -6,8 +6,9 @@ import math
 import pytest
 
 from relaycfg.files.resolve_boards import resistance_20, warm
-from relaycfg.files.resolve_supply import band_percent, series_ohm, zero_sequence
+from relaycfg.files.resolve_supply import band_percent, series_ohm, star_neutral_ohm, zero_sequence
 from relaycfg.files.tables import Tables
+from relaycfg.model.geometry import three_phase
 
 CABLE = "length_m = 40\nline_mm2 = 25\nneutral_mm2 = 25\npe_mm2 = 16"
 
@@ -56,9 +57,9 @@ def test_ohms_given_are_taken_as_they_are(bench):
     assert (cable.fault_line_ohm, cable.fault_neutral_ohm) == (cable.line_ohm, cable.neutral_ohm)
 
 
-def test_transformer_impedance_agrees_with_the_published_row():
-    # own arithmetic row impedance-400-v-4-percent: 16 mohm at 400 kVA, 64 mohm at 100 kVA
-    for kva, ohm in Tables().row("impedance-400-v-4-percent").points:
+def test_transformer_impedance_is_the_percentage_of_rated_voltage_over_rated_current():
+    # own arithmetic at 400 V and 4 %: 0.04 * 400^2 / S
+    for kva, ohm in ((100, 0.064), (160, 0.04), (250, 0.0256), (400, 0.016), (630, 0.010159)):
         assert abs(series_ohm(4, kva, 400, 3.3)) == pytest.approx(ohm, abs=5e-7)
     assert cmath.phase(series_ohm(4, 400, 400, 3.3)) == pytest.approx(math.atan(3.3))
 
@@ -72,6 +73,12 @@ def test_transformer_ohms_go_by_the_no_load_volts_between_lines(bench):
 def test_a_given_zero_sequence_ratio_enters_as_a_third_of_the_difference(bench):
     source = bench.read(bench.with_("rating_kva = 400", "rating_kva = 400\nzero_sequence_ratio = 4")).source
     assert source.neutral_ohm == pytest.approx(source.line_ohm)
+
+
+def test_the_neutral_of_a_star_carries_the_currents_of_all_its_lines():
+    # limiting cases of Z0 = Z1 + 3 Z_N
+    assert star_neutral_ohm(0.1 + 0.2j, 0.1 + 0.2j, three_phase()) == 0
+    assert star_neutral_ohm(0j, 3 + 6j, three_phase()) == pytest.approx(1 + 2j)
 
 
 def test_vector_groups_have_the_zero_sequence_of_their_rows():
@@ -110,5 +117,9 @@ def test_bands_are_read_in_percent_of_their_own_nominal(row, low, high):
 def test_a_band_becomes_volts_of_the_site(bench):
     supply = bench.read(bench.with_("nominal_v = 230", 'nominal_v = 230\nband = "United Kingdom statutory"')).supply
     assert (supply.low_v, supply.high_v) == pytest.approx((216.2, 253.0))
+    assert supply.band_source.startswith("Electricity Supply (Amendment) (No. 2) Regulations 1994")
+    assert (supply.band_source.endswith(", read"), supply.band_status) == (False, "read")
     own = bench.read(bench.with_("nominal_v = 230", "nominal_v = 230\nlow_percent = -8\nhigh_percent = 6")).supply
     assert (own.low_v, own.high_v) == pytest.approx((211.6, 243.8))
+    assert (own.band_source, own.band_status) == ("user", "user")
+    assert bench.read().supply.band_status == "quoted"

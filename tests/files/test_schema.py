@@ -8,10 +8,11 @@ from pathlib import Path
 import jsonschema
 import pytest
 
-from relaycfg.files import key_table, site_schema
+from relaycfg.files import key_table, name_lists, site_schema
 from relaycfg.files.device_form import DeviceForm
 from relaycfg.files.settings_form import SettingsForm
 from relaycfg.files.site_form import SiteForm
+from relaycfg.files.tables import is_high_curve, names
 
 EXAMPLES = Path(__file__).parents[2] / "examples"
 
@@ -63,13 +64,27 @@ def test_the_schema_knows_no_null_which_toml_does_not_have():
     assert "null" not in json.dumps(site_schema())
 
 
+def test_the_lists_hold_every_name_that_is_accepted():
+    lists = name_lists()
+    for family, keep in (("supply-bands", None), ("load-kinds", None), ("withstand-curves", is_high_curve)):
+        for name in names(family, keep or (lambda _: True)):
+            assert f"`{name}`" in lists
+    for name in ("G1", "G2", "G3", "public supply", "dips class 2", "dips class 3"):
+        assert f"| `{name}` |" in lists
+    assert [line for line in lists.splitlines() if line.startswith("#")] == [
+        "### supply.band", "### load.kind", "### equipment.overvoltage", "### source.class", "### must_hold.sets"
+    ]  # fmt: skip
+    assert "| `United Kingdom statutory` | -6.0 to +10.0 % of 230 V |" in lists
+
+
 def test_the_key_table_has_a_line_for_every_key_with_its_default():
     table = key_table()
     for line in (
         "| `supply.nominal_v` | nominal voltage, line to neutral | number | V | 50 to 600 | required |",
-        "| `load.usage` | share of time it is on | number |  | 0 to 1 | 0.5; own assumption (ours) |",
+        "| `load.usage` | share of time it is on | number |  | 0 to 1 | 0.5; own assumption, ours |",
         "| `source.class` | generator: performance class of ISO 8528-5 | `G1`, `G2`, `G3` |  |  "
-        "| generating set class G2; own assumption (ours) |",
+        "| generating set class G2; own assumption, ours |",
+        "| `source.line_ohm` | impedance: each line | `[r, x]` | ohm |  | required for that kind |",
         "| `element.delay_s.step` | step | number | s | above 0 to 600 | required |",
         "| `start_up.inhibit_s` | 27 and 47 wait so long; never 59 or 59N | number | s | 0 to 60 | 0 |",
     ):

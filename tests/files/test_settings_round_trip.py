@@ -1,6 +1,7 @@
 """Settings written and read again are the same settings."""
 
 import tomllib
+import unicodedata
 
 from hypothesis import HealthCheck, given, settings, strategies
 
@@ -11,8 +12,8 @@ from relaycfg.model.settings import Settings, Stage
 VOLTS = strategies.floats(0.5, 999, allow_nan=False)
 SECONDS = strategies.floats(0, 3600)
 WORDS = strategies.text(
-    strategies.characters(codec="utf-8", exclude_categories=["Cc", "Cs", "Zl", "Zp"]), max_size=20
-).map(str.strip)
+    strategies.characters(codec="utf-8", exclude_categories=["Cc", "Cf", "Cs", "Zl", "Zp"]), max_size=20
+).map(lambda text: unicodedata.normalize("NFC", text.strip()))
 
 
 @strategies.composite

@@ -74,6 +74,43 @@ CASES = {
         "site.toml:9:1: source.grid.no_load_v is 400, which looks like a line-to-line voltage; "
         "give volts from line to neutral, 184 to 287.5",
     ),
+    "ohms of a transformer": (
+        "rating_kva = 400", "rating_kva = 400\nline_ohm = [0.1, 0.1]",
+        'site.toml:9:1: source.grid.line_ohm is not used by kind = "transformer"; '
+        'remove it, or give kind = "impedance"',
+    ),
+    "class of a transformer": (
+        "rating_kva = 400", 'rating_kva = 400\nclass = "G2"',
+        'site.toml:9:1: source.grid.class is not used by kind = "transformer"; remove it, or give kind = "generator"',
+    ),
+    "neutral of a transformer": (
+        "rating_kva = 400", "rating_kva = 400\nneutral_ohm = [0, 0]",
+        'site.toml:9:1: source.grid.neutral_ohm is not used by kind = "transformer"; '
+        'remove it, or give kind = "generator" or "impedance"',
+    ),
+    "vector group of a generator": (
+        'kind = "transformer"\nrating_kva = 400\nimpedance_percent = 4',
+        'kind = "generator"\nrating_kva = 400\nvector_group = "Dyn11"',
+        'site.toml:9:1: source.grid.vector_group is not used by kind = "generator"; '
+        'remove it, or give kind = "transformer"',
+    ),
+    "sheet of a CSV": (
+        KW, KW + '[loads]\nfile = "loads.csv"\nsheet = "Loads"\n',
+        "site.toml:32:1: loads.sheet is not used by a CSV file; remove it, or give an .xlsx file",
+    ),
+    "low seconds without low volts": (
+        KW, KW + "[equipment]\nsustained_low_s = 5\n",
+        "site.toml:31:1: equipment.sustained_low_s is not used without sustained_low_v; give sustained_low_v too",
+    ),
+    "temperature beside ohms": (
+        CABLE, "line_ohm = [0.1, 0.01]\ntemperature_c = 70",
+        "site.toml:19:1: board.Workshop.cable is given both in ohms and by section; "
+        "keep line_ohm, neutral_ohm, pe_ohm or the sections",
+    ),
+    "impedance that leads": (
+        KW, 'ohm = [20, 5]\nreactive = "leading"\n',
+        "site.toml:30:1: load.Kiln.reactive is given beside ohm; remove it: ohm is a constant impedance",
+    ),
     "vector group without neutral": (
         "rating_kva = 400", 'rating_kva = 400\nvector_group = "Dd0"',
         'site.toml:9:1: source.grid.vector_group is "Dd0"; give one such as Dyn11, Yzn5 or Yyn0',
@@ -99,7 +136,8 @@ CASES = {
     "empty name": ('name = "Workshop"', 'name = " "', "site.toml:16:1: board.2.name is empty; give a name"),
     "control character": (
         'name = "Workshop"', 'name = "a\\u0007b"',
-        'site.toml:16:1: board.a b.name is "a\\u0007b", with a control character; write plain text',
+        'site.toml:16:1: board.a b.name is "a\\u0007b", with the control character U+0007; '
+        "write plain text",
     ),
     "negative length": (
         "length_m = 40", "length_m = -4",
@@ -157,7 +195,7 @@ CASES = {
     ),
     "points of three": (
         KW, KW + "[equipment]\npoints = [[300, 1, 2]]\n",
-        "site.toml:31:11: equipment.points is [300, 1, 2]; give [[volts, seconds], ...] with rising volts",
+        "site.toml:31:11: equipment.points is [300, 1, 2]; give [[V, s], ...] with rising volts",
     ),
     "unknown curve": (
         KW, KW + '[equipment]\novervoltage = "household envelope"\n',
@@ -190,7 +228,30 @@ CASES = {
     ),
     "feed from the PE": (
         KW, KW + '[[relay]]\nname = "R1"\nmeasures_at = "MB"\ndevice = "relay.toml"\nsupply = { from = "L1-PE" }\n',
-        'site.toml:34:12: relay.R1.supply.from is "L1-PE"; did you mean "L1-N"?',
+        'site.toml:34:12: relay.R1.supply.from is "L1-PE"; '
+        'give one of "auxiliary", "L1-N", "L2-N", "L3-N", "L1-L2", "L2-L3", "L3-L1"',
+    ),
+    "a character that turns the writing round": (
+        'name = "Workshop"', 'name = "Work\u2066shop"',
+        'site.toml:16:1: board.Work shop.name is "Work\\u2066shop", '
+        "with the control character U+2066 left-to-right isolate; write plain text",
+    ),
+    "a mark in a text that is printed": (
+        "[supply]", '[document]\ntitle = "a\u200eb"\n[supply]',
+        'site.toml:2:1: document.title is "a\\u200eb", with the control character U+200E left-to-right mark; '
+        "write plain text",
+    ),
+    "a number too large": (
+        KW, "kw = 1e999\n", "site.toml:29:1: load.Kiln.kw is 1e999; give kW, -10000 to 10000"
+    ),
+    "a number too large in a list": (
+        KW, "ohm = [1, -1e999]\n", "site.toml:29:11: load.Kiln.ohm is -1e999; give [r, x] in ohms"
+    ),
+    "unknown kind that is near to none": (
+        KW, KW + 'kind = "constant voltage"\n',
+        'site.toml:30:1: load.Kiln.kind is "constant voltage"; give one of "resistive heater", "lighting mix", '
+        '"air conditioner", "refrigerator", "fan", "pump", "washing machine", "range", "dryer", '
+        '"water heater", "dishwasher", "heat-pump water heater", ...',
     ),
     "feed without its range": (
         KW, KW + '[[relay]]\nname = "R1"\nmeasures_at = "MB"\ndevice = "relay.toml"\nsupply = { from = "L1-N" }\n',
@@ -212,12 +273,23 @@ CASES = {
 def test_a_mistake_is_answered_word_for_word(bench, name):
     old, new, sentence = CASES[name]
     bench.put("relay.toml", bench.device)
+    bench.put("loads.csv", "board,between,kw\nMB,L2-N,1\n")
     assert bench.sentences(bench.with_(old, new)) == [sentence]
 
 
-def test_a_misspelt_key_is_named_with_its_near_match_and_what_is_missing_for_it(bench):
+def test_low_volts_and_loads_that_mind_them_have_an_effect_only_together(bench):
+    minding, volts = "minds_low_v = true\n", "[equipment]\nsustained_low_v = 184\n"
+    assert bench.read(bench.site + minding + volts).warnings == ()
+    assert bench.read(bench.site + minding).warnings == (
+        "Load Kiln: minds_low_v has no effect without [equipment] sustained_low_v.",
+    )
+    assert bench.read(bench.site + volts).warnings == (
+        "Equipment: sustained_low_v has no effect, for no load states minds_low_v.",
+    )
+
+
+def test_a_misspelt_key_is_named_with_its_near_match_once(bench):
     assert bench.sentences(bench.with_("nominal_v", "nominal")) == [
-        "site.toml:1:1: supply.nominal_v is missing; give volts from line to neutral, 50 to 600",
         "site.toml:2:1: supply.nominal is not a known key; did you mean nominal_v?",
     ]
 
@@ -233,8 +305,9 @@ def test_members_of_a_group_share_one_usage(bench):
 def test_a_second_relay_and_its_missing_device_file_are_reported_at_once(bench):
     text = bench.site + bench.relay + bench.relay.replace("R1", "R2")
     assert bench.sentences(text) == [
+        'site.toml:34:1: relay.R1.device is "relay.toml", not there; '
+        "give the path of a device file, from the folder of the site",
         "site.toml:36:1: relay.R2 is a second relay, not yet available; keep one [[relay]]",
-        "relay.toml: not there; give the path of a device file, from the folder of the site",
     ]
 
 
@@ -257,8 +330,22 @@ def test_an_empty_site_lists_what_it_takes(bench):
 @pytest.mark.parametrize(
     ("content", "sentence"),
     [
-        (b"[supply", "site.toml:1:8: not TOML (Expected ']' at the end of a table declaration); correct the line"),
+        (b"[supply", "site.toml:1:8: not TOML (a table header without its closing bracket); correct the line"),
         (b"a = 1\nb = '\xe9'\n", "site.toml:2:6: not UTF-8 text; save the file as UTF-8"),
+        ("a = 1".encode("utf-16-le"), "site.toml:1:2: not UTF-8 text; save the file as UTF-8"),
+        (b"[a]\n[a]\n", "site.toml:2:3: not TOML (a table given twice); correct the line"),
+        (b"a = 1\na = 2\n", "site.toml:2:6: not TOML (a key or table given twice); correct the line"),
+        (b"a = 1,5\n", "site.toml:1:6: not TOML (more on the line than a key and its value); correct the line"),
+        (
+            b"a = yes\n",
+            "site.toml:1:5: not TOML (a value that is no number, text in quotes, list or table); correct the line",
+        ),
+        (b'a = "x\n', "site.toml:1:7: not TOML (a text without its closing quotes); correct the line"),
+        (b'a = "C:\\data"\n', "site.toml:1:10: not TOML (a backslash in a text: write it twice); correct the line"),
+        (
+            b"a = 1\rb = 2\r",
+            "site.toml:1:6: a line that ends in CR alone; save the file with line ends LF or CR LF",
+        ),
         (b"x" * 1_000_000, "site.toml:1:1: a line of 1000000 characters; write at most 10000 in a line"),
         (b"# \n" * 2_000_000, "site.toml: larger than 5 MB; give a file of this kind only, or split it"),
         (b"a = " + b"[\n" * 5000, "site.toml: nested too deeply; write flat tables"),

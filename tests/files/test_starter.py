@@ -10,6 +10,7 @@ import pytest
 from relaycfg.errors import InputError
 from relaycfg.files import read_site, site_schema, write_starter
 from relaycfg.model.device import Function
+from relaycfg.study import derive
 
 NAMES = ["loads.csv", "relay.toml", "site.schema.json", "site.toml"]
 
@@ -30,8 +31,19 @@ def test_a_starter_reads_back_with_ranges_in_proportion(tmp_path, volts, earthin
     assert shift.pickup.high == pytest.approx(0.6 * volts, abs=0.5)
     under = site.relay.device.element(Function.UNDERVOLTAGE)
     assert under.dropout_ratio == (1.01, 1.02, 1.03, 1.05)
+    assert shift.accuracy.pickup_abs == pytest.approx(2 / 3 * 0.01 * volts, abs=0.1)
+    assert shift.accuracy.pickup_abs >= 2 / 3 * 0.01 * volts
+    thirds = {load.kind: load.third_harmonic_percent for load in site.loads}
+    assert (thirds["led lighting"], thirds["electronics"], thirds["water heater"]) == (15, 25, 0)
     scale = 1 if 220 <= volts <= 240 else volts / 230
     assert site.equipment.sustained_high_v == pytest.approx(255 * scale, 0.01)
+
+
+@pytest.mark.parametrize("volts", [50, 63.5, 100, 120, 127, 173, 220, 230, 254, 277, 346, 500, 600])
+@pytest.mark.parametrize("earthing", ["TN-S", "TN-C-S", "TT"])
+def test_settings_can_be_derived_for_a_starter_without_an_exception(tmp_path, volts, earthing):
+    write_starter(tmp_path, float(volts), earthing, None)
+    assert derive(read_site(tmp_path / "site.toml", need_relay=True), 100, 1).exceptions == 0
 
 
 def test_the_schema_comes_with_it_and_the_site_agrees_with_it(tmp_path):
@@ -81,10 +93,43 @@ def test_a_folder_that_holds_a_site_is_left_alone(tmp_path):
     assert read_site(tmp_path / "site.toml").loads
 
 
+def test_own_loads_that_lie_in_place_stay_as_they_are(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    Path("loads.csv").write_text("# mine\nboard,name,between,kw\nMB,Saw,L1-N,1\n", "utf-8")
+    write_starter(Path(), 230.0, "TN-S", Path("loads.csv"))
+    assert Path("loads.csv").read_text("utf-8").startswith("# mine\n")
+    assert [load.name for load in read_site(Path("site.toml")).loads] == ["Saw"]
+
+
+def test_own_loads_by_the_name_of_another_file_are_not_written_over(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    Path("site.toml").write_text("board,name,between,kw\nMB,Saw,L1-N,1\n", "utf-8")
+    with pytest.raises(InputError) as caught:
+        write_starter(Path(), 230.0, "TN-S", Path("site.toml"), force=True)
+    assert caught.value.text() == (
+        "site.toml: one of the files read for it; give another name: an input is never replaced"
+    )
+    assert [p.name for p in Path().iterdir()] == ["site.toml"]
+
+
+def test_a_folder_that_cannot_be_is_answered(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    Path("file").write_text("", "utf-8")
+    for folder, sentence in (
+        ("file", "file: a file; give a new folder"),
+        ("a" * 300, f"{'a' * 300}: not to be made (file name too long); give another folder"),
+        ("a\0b", "a b: not a usable path; give another folder"),
+    ):
+        with pytest.raises(InputError) as caught:
+            write_starter(Path(folder), 230.0, "TN-S", None)
+        assert caught.value.text() == sentence
+
+
 @pytest.mark.parametrize(
     ("volts", "earthing", "sentence"),
     [
         (400.0, "TN-S", "--volts: 400, which looks like a line-to-line voltage; give volts from line to neutral, 230"),
+        (391.0, "TN-S", "--volts: 391, which looks like a line-to-line voltage; give volts from line to neutral, 230"),
         (12.0, "TN-S", "--volts: 12; give volts from line to neutral, 50 to 600"),
         (230.0, "IT", '--earthing: "IT"; give TN-S, TN-C-S or TT'),
     ],

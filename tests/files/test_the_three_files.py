@@ -256,7 +256,7 @@ def test_every_part_of_the_site_arrives(site):
     assert site.conductor("Hall") == "PEN"
     assert site.conductor("Shed") == "N"
     assert site.places == ("source", "Hall", "Shed")
-    assert site.warnings == ()
+    assert site.warnings == ("Equipment: sustained_low_v has no effect, for no load states minds_low_v.",)
 
 
 def test_the_device_counts_as_it_is_marked(site):

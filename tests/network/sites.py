@@ -114,6 +114,7 @@ def site(
         253.0,
         "",
         "",
+        "",
         "source",
         0.0,
         0.0,  # type: ignore[arg-type]
@@ -138,7 +139,7 @@ def site(
         (),
         None,
         Equipment(264.5, 5.0, ((264.5, 5.0),), None, 0.0, (), "", "", "own"),
-        ReferenceCases((), (), 0.0, ""),
+        ReferenceCases((), (), 0.0, "", ""),
         (),
         (),
         (),

@@ -37,6 +37,7 @@ def sheets(sample):
     studies = {
         "plain": sample.study(),
         "letter": sample.study(paper="Letter"),
+        "check": sample.checked(),
         "large": sample.study(boards=40, exceptions=12),
     }
     return {kind: render(study, TEMPLATES, "0.1.0") for kind, study in studies.items()}

@@ -115,3 +115,20 @@ def test_a_held_count_joins_runs_across_a_short_gap() -> None:
     level, release = np.array([280.0]), np.array([270.0])
     assert run_lengths(own, level, release)[0, 0] == pytest.approx(1.0)
     assert run_lengths(own, level, release, hold_s=0.5)[0, 0] == pytest.approx(2.0)
+
+
+@settings(max_examples=100, deadline=None)
+@given(courses(), st.integers(206, 310), st.integers(0, 40), st.booleans())
+def test_courses_left_out_never_stand_behind_r(
+    drawn: tuple[np.ndarray, np.ndarray], pickup: int, hysteresis: int, shared: bool
+) -> None:
+    own = runs(*drawn, standing=205.0, shared=shared, window=0.02)
+    level, release = np.array([float(pickup)]), np.array([float(pickup - hysteresis)])
+    every = run_lengths(own, level, release).max()
+    assert ride_through(own, level, release).seconds[0] == every
+
+
+def test_a_milder_and_shorter_course_is_left_out() -> None:
+    severity = np.array([[[300.0, 230.0]], [[290.0, 230.0]], [[290.0, 230.0]]])
+    own = runs(severity, np.array([[1.0], [0.5], [2.0]]), 205.0)
+    assert own.front.tolist() == [0, 2]

@@ -75,7 +75,7 @@ def test_a_blunt_setting_leaves_core_states_and_the_remedy_switches_stages_on(de
     study = check(derived.site, with_stages(derived, stage(Function.OVERVOLTAGE, 1, 380.0, 5.0)), 200, 1)
     finding = next(f for f in study.findings if f.about == "break at source")
     assert finding.exception
-    assert "core scenarios are not cleared in time" in finding.sentence
+    assert "core scenarios not cleared in time" in finding.sentence
     assert "switch 59N stage 1 on" in finding.do
 
 
@@ -166,7 +166,17 @@ def test_automatic_reconnection_is_an_exception(derived: Study) -> None:
 def test_settings_a_device_does_not_have_are_exceptions(derived: Study) -> None:
     odd = stage(Function.OVERVOLTAGE, 1, 300.3, 5.0)
     study = check(derived.site, with_stages(derived, odd), 50, 1)
-    assert any("pickup 300.3 is not on 231 to 420 by 1" in f.sentence for f in study.findings)
+    first = study.findings[0]
+    assert "pickup 300.3 is not on 231 to 420 by 1" in first.sentence
+    assert first.do == "the nearest the device has is 300"
+
+
+def test_a_stage_that_only_signals_is_told_to_trip(derived: Study) -> None:
+    signals = tuple(replace(s, action="alarm") if s.on else s for s in derived.settings.stages)
+    study = check(derived.site, replace(derived.settings, stages=signals), 100, 1)
+    finding = next(f for f in study.findings if f.about == "break at source" and f.exception)
+    assert "its action from alarm to trip" in finding.do
+    assert "leave as it is" not in finding.do
 
 
 def test_phases_all_never_sees_a_lost_neutral(derived: Study) -> None:
@@ -275,7 +285,7 @@ pe_ohm = [0.07, 0.03]
     yard.write(tmp_path, elements="".join(coarse))
     (tmp_path / "site.toml").write_text(text)
     study = derive(yard.read(tmp_path), 100, 1)
-    left = [f for f in study.findings if "core scenarios are not cleared" in f.sentence]
+    left = [f for f in study.findings if "core scenarios not cleared" in f.sentence]
     blocked = sum(g.scenarios for g in study.closed if g.core)
     assert bool(left) == bool(blocked)
 

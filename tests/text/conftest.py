@@ -2,7 +2,6 @@
 
 from dataclasses import replace
 
-import numpy as np
 import pytest
 
 from relaycfg.model import results as r
@@ -55,7 +54,7 @@ def site(device):
     )
     return Site(
         Document("Voltage relay settings", "NY-1", "A", "draft", "", "North yard", "A4", ""),
-        Supply(three_phase(), 230, 50, "TN-S", 195.5, 253, "band", "", "MB", 2, 0),
+        Supply(three_phase(), 230, 50, "TN-S", 195.5, 253, "band", "", "read", "MB", 2, 0),
         Source("grid", "impedance", 230, 0.01, 0.01, 0.0001, None, "neutral-bar"),
         (Board("MB", "source", cable, False, None), Board("Workshop", "MB", cable, False, None)),
         (),
@@ -63,7 +62,7 @@ def site(device):
         (),
         relay,
         Equipment(253, 15, ((276.0, 15.0),), None, 0, (), "", "", ""),
-        ReferenceCases((), (), 0.3, ""),
+        ReferenceCases((), (), 0.3, "", ""),
         (),
         inputs,
         (),
@@ -72,7 +71,7 @@ def site(device):
 
 
 def volts(*l_n_v):
-    return r.BoardVolts(l_n_v, (0.0, -120.0, 120.0), (398.0, 398.0, 398.0), 57.5, None, 12.0, np.nan)
+    return r.BoardVolts(l_n_v, (0.0, -120.0, 120.0), (398.0, 398.0, 398.0), 57.5, None, 12.0, None)
 
 
 def row(at, state, l_n_v=(172.5, 263.5, 263.5), joint_ohm=None):
@@ -117,29 +116,30 @@ def stage_result(function=Function.OVERVOLTAGE, number=1, on=True, **changes):
     margins = r.Margins(4.0, 1.5, 1.7, "case 1, upper limit", 11.0, None, 2.2, "break at MB")
     figures = r.StageResult(
         stage, 115.2, "230 V line to neutral",
-        265.0, "V", 262.4, 267.7, 4.13, True, (bound,), margins, share(99), "slow step"
+        265.0, "V", 262.4, 267.7, 4.13, True, (bound,), margins, 49.5, "slow step"
     )  # fmt: skip
     return replace(figures, **changes)
 
 
 def case(number, passed):
+    operated = () if passed else (r.Operated("27 stage 1", 0.15, "all lines"),)
     return r.CaseResult(
         number, "three-phase dip", "hold", "hold" if passed else "trip", passed, "to 40 % for 0.2 s", "IEC 61000-4-11",
-        "quoted", () if passed else ("27 stage 1 after 0.15 s",), 230.0, 92.0, 0.0, 20.0, 0.3, "27 stage 1",
+        "quoted", operated, 230.0, 92.0, 0.0, 20.0, 0.3, "59 stage 1", "27 stage 1, never resets",
     )  # fmt: skip
 
 
 @pytest.fixture
 def study(site, device, break_study):
     off = stage_result(
-        Function.UNDERVOLTAGE, on=False, bounds=(), margins=None, adds=None, reason="it adds nothing here"
+        Function.UNDERVOLTAGE, on=False, bounds=(), margins=None, clears_percent=None, reason="it adds nothing here"
     )
     stages = (stage_result(), off)
     steps = (
         r.CurveStep(250.0, None, "case 1, upper limit"),
-        r.CurveStep(262.0, 5.0, "case 4, swell"),
-        r.CurveStep(263.0, 5.0, "case 4, swell"),
-        r.CurveStep(280.0, 0.5, "case 5, swell"),
+        r.CurveStep(262.0, 5.0, "case 4, swell", 4),
+        r.CurveStep(263.0, 5.0, "case 4, swell", 4),
+        r.CurveStep(280.0, 0.5, "case 5, swell", 5),
     )
     corridor = r.Corridor(Function.OVERVOLTAGE, "V", steps, (), steps[:1], 253.0, "case 1, upper limit")
     found = (
@@ -147,11 +147,14 @@ def study(site, device, break_study):
         r.Finding("warning", "input_digest", "the settings were derived from other inputs", "derive again", ""),
         r.Finding("note", "", "one input is a default", "", ""),
     )
-    group = r.ClosedGroup({"59": "case 4"}, 3, True, "MB", 281.0, 4.0, None, "3 states are closed by case 4")
+    group = r.ClosedGroup({"59": "case 4"}, 3, True, "MB", 281.0, 4.0, None, "3 scenarios are closed by case 4")
+    settings = Settings("R1", device.name, "sha256:abc", tuple(s.stage for s in stages), 0.5, "automatic", 5.0)
+    volts_v = (172.5, 263.5, 263.5)
+    worked = r.WorkedBreak("MB", "connected", (0.2 + 0j, 0.1 + 0j, 0.1 + 0j), 0j, 230.0, 57.5 + 0j, volts_v, volts_v)
     return r.Study(
-        site, device, "check", 1, 200, Settings("R1", device.name, "", tuple(s.stage for s in stages), 0.5, "by hand"),
-        stages, (case(1, True), case(2, False)), break_study, (corridor,), (group,), 3, found,
-        (r.TestPoint("59 stage 1", "L1", "250 to 270 V", "trip", 262.4, 267.7, "V", ""),), None,
+        site, device, "check", 1, 200, settings,
+        stages, (case(1, True), case(2, False)), break_study, (corridor,), (group,), 7, 3, found,
+        (r.TestPoint("59 stage 1", "L1", "250 to 270 V", "trip", 262.4, 267.7, "V", ""),), worked,
         (r.PlanePoint(57.5 + 3j, "high volts", "in time"),), 3.2, (("supply", 300.0, 344.0),),
-        {"59": 2.04, "47": None}, {"59": share(120, 123)}, "sha256:abc",
+        {"59": 2.04, "47": None}, (r.Cover("59", 97.6, 61.5), r.Cover("47", None, 0.0)), "sha256:abc",
     )  # fmt: skip

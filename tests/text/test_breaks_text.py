@@ -32,7 +32,9 @@ def test_a_place_shows_the_worst_board_and_the_relay(site, break_study):
 
 def test_flags_and_notes_are_shown(site, break_study):
     text = breaks_text(site, break_study)
-    assert "! MB: below band" in text
+    assert "! MB; Workshop: below band" in text
+    assert text.count("below band: some load gets less than the volts its law holds for") == 1
+    assert "above band:" not in text
     assert "the load is balanced" in text
 
 
@@ -49,6 +51,8 @@ def test_without_all_it_stays_within_sixty_lines(site, break_study):
 def test_all_lists_every_state_and_board(site, break_study):
     crowd = crowded(break_study)
     text = breaks_text(site, crowd, everything=True)
+    assert text.count("At relay R1: N-PE -; unbalance: line-to-neutral deviation 26.0 %") == len(crowd.rows)
+    assert "line-to-line deviation 0.0 %, V2/V1 0.0 %, spread 39.0 %" in " ".join(text.split())
     for row in crowd.rows:
         assert f"{row.at} (N), state {row.state}, converged" in text
     assert "--all" not in text
@@ -69,11 +73,54 @@ def test_no_line_is_wider_than_the_terminal_and_no_column_is_lost(site, break_st
         assert not any(line.endswith("..") for line in lines)
 
 
+def floors(site, study):
+    """Forty boards whose names begin alike and end alike."""
+    names = [f"Distribution board {b}, floor {f}" for b in range(1, 6) for f in range(1, 9)]
+    boards = tuple(replace(site.boards[0], name=name) for name in names)
+    rows = tuple(replace(study.rows[0], at=n, boards={n: study.rows[0].boards["MB"]}) for n in names)
+    summaries = tuple(
+        replace(study.summaries[1], at=n, boards_harmed=tuple(names), not_disconnected=tuple(names)) for n in names
+    )
+    notes = study.notes * len(names)
+    return replace(site, boards=boards), replace(study, rows=rows, summaries=summaries, places=40, notes=notes)
+
+
+def test_names_that_begin_alike_stay_apart_on_one_screen(site, break_study):
+    many, study = floors(site, break_study)
+    lines = breaks_text(many, study).splitlines()
+    assert len(lines) <= 60
+    assert max(map(len, lines)) <= 100
+    tables = [k for k, line in enumerate(lines) if line.startswith("Place  ")]
+    assert len(tables) == 3
+    for start in tables:
+        shown = [line.split("  ")[0] for line in lines[start + 1 : start + 4]]
+        assert all("1, floor " in name for name in shown)
+        assert len(set(shown)) == 3
+
+
 def test_a_joint_shows_its_ohms_amperes_and_watts(site, break_study):
     joint = replace(break_study, rows=(replace(break_study.rows[0], joint_ohm=2.0, joint_a=12.35, joint_w=1305.1),))
     text = breaks_text(site, joint)
     assert "neutral joint of 2 ohm" in text
     assert "12.3  1 305" in text
+
+
+def test_the_columns_of_the_relay_are_named_for_it(site, break_study):
+    assert "relay L1  relay L2  relay L3" in breaks_text(site, break_study)
+
+
+def test_without_settings_a_seen_place_leaves_the_undetected_share_to_them(site, break_study):
+    seen, unseen = break_study.summaries
+    text = breaks_text(site, replace(break_study, summaries=(replace(seen, classes={}), replace(unseen, classes={}))))
+    rows = [line for line in text.splitlines() if line.startswith(("MB  ", "Workshop  "))][-2:]
+    assert "depends on settings" in rows[0]
+    assert "0 (< 3/200)" in rows[1]
+
+
+def test_the_worst_sampled_state_can_be_shown_again(site, break_study):
+    text = breaks_text(site, break_study)
+    assert "highest at Workshop L2 in sample 17" in " ".join(text.split())
+    assert text.count('--state "sample 17"') == 1
 
 
 def test_a_site_without_relay_says_that_nothing_is_seen(site, break_study):

@@ -2,12 +2,13 @@
 
 import pytest
 
-from relaycfg.study.reading import read_meter
+from relaycfg.study import read_meter
 from relaycfg.text import reading_text
 
 READINGS = [
     ((172, 263, 263), None),
     ((172, 263, 263), (398, 398, 398)),
+    ((207, 253, 253), None),
     ((0, 230, 230), None),
     ((0, 230, 230), (230, 398, 230)),
     ((0, 0, 0), None),

@@ -39,7 +39,10 @@ def test_check_says_first_what_to_turn(study):
         "Settings",
     )
     ordered(
-        text, "Cases that fail (1 of 2)", "case 2, three-phase dip: expected hold, 27 stage 1 after 0.15 s", "Settings"
+        text,
+        "Cases that fail (1 of 2)",
+        "case 2, three-phase dip: expected hold, 27 stage 1 after 0.15 s (all lines)",
+        "Settings",
     )
     ordered(text, "Cases as expected (1 of 2)", "1 three-phase dip")
 
@@ -79,7 +82,67 @@ def test_what_is_not_detected_is_always_said(study):
         assert "A break with balanced load moves no voltage: no voltage relay can see it." in text
         assert "the break is not upstream of the relay's tap at MB" in text
         assert "59 from 2.04:1:1, 47 never" in text
-        assert "Harmful scenarios these settings do not clear in time: 3" in text
+        assert (
+            "Not cleared in time: 7 harmful scenarios; 3 of them no secure setting clears, the others were given up "
+            "for security margin or are not set."
+        ) in " ".join(text.split())
+
+
+@pytest.mark.parametrize(
+    ("uncleared", "blocked", "said"),
+    [
+        (1, 1, "1 harmful scenario; no secure setting clears it."),
+        (5, 5, "5 harmful scenarios; no secure setting clears them."),
+        (1, 0, "1 harmful scenario; it was given up for security margin or is not set."),
+        (5, 0, "5 harmful scenarios; they were given up for security margin or are not set."),
+        (5, 4, "4 of them no secure setting clears, the other was given up for security margin or is not set."),
+    ],
+)
+def test_what_is_not_cleared_is_counted_with_its_reason(study, uncleared, blocked, said):
+    text = check_text(replace(study, uncleared=uncleared, blocked=blocked))
+    assert said in " ".join(text.split())
+
+
+def test_cover_has_two_columns_of_different_shares(study):
+    text = check_text(study)
+    assert "Harmful states cleared in time  All states in which it operates" in text
+    assert any(line.split() == ["59", "97.6", "%", "61.5", "%"] for line in text.splitlines())
+    assert any(line.split() == ["47", "-", "0.0", "%"] for line in text.splitlines())
+
+
+def test_what_a_stage_clears_alone_is_said_once(study):
+    assert check_text(study).count("alone it clears 49.5 % of the harmful states in time") == 1
+    assert "alone it clears" not in derive_text(study)
+
+
+def test_an_order_is_given_once(study):
+    orders = "59 stage 1: turn U> from 253 to 261 V"
+    first = replace(study.findings[0], do=orders)
+    second = replace(study.findings[0], do=f"{orders}; switch 59 stage 2 on: U> 327 V")
+    third = replace(study.findings[0], do=orders)
+    text = " ".join(check_text(replace(study, findings=(first, second, third))).split())
+    assert text.count(orders) == 1
+    assert "do: as for 1; switch 59 stage 2 on: U> 327 V" in text
+    assert "do: as for 1 if left" in text
+
+
+def test_what_a_finding_says_is_not_said_again_among_the_blind_spots(study):
+    unseen = study.breaks.summaries[1].why_not
+    place = replace(study.findings[1], about="break at Workshop", sentence=f"break at Workshop is not seen: {unseen}")
+    closed = replace(study.findings[0], do=f"no secure setting exists: {study.closed[0].sentence}")
+    for form in (check_text, derive_text):
+        text = " ".join(form(replace(study, findings=(closed, place))).split())
+        assert text.count(unseen) == 1
+        assert text.count(study.closed[0].sentence) == 1
+        assert "Breaks not seen from here, the warnings say why: Workshop." in text
+
+
+def test_a_case_names_the_stage_of_each_margin(study):
+    row = next(line for line in check_text(study).splitlines() if line.startswith("1 three-phase dip"))
+    assert row.split()[-8:] == ["20.0", "59", "stage", "1", "0.30", "27", "stage", "1"]
+    free = replace(study.cases[0], margin_s=None, nearest_s="")
+    row = next(line for line in check_text(replace(study, cases=(free,))).splitlines() if line.startswith("1 three"))
+    assert row.split()[-2:] == ["-", "-"]
 
 
 def test_no_hit_in_the_sample_is_not_zero(study):
@@ -118,6 +181,25 @@ def test_a_margin_that_nothing_limits_says_so(study):
     assert "clears by  nothing limits it (no state left)" in text
 
 
+@pytest.mark.parametrize(
+    ("status", "words"),
+    [
+        ("read", "read"),
+        ("quoted", "as quoted"),
+        ("memory", "from memory, verify"),
+        ("own", "own"),
+        ("user", "given by the user"),
+        ("computed", "computed"),
+        ("assumed", "assumed"),
+    ],
+)
+def test_a_failing_case_says_who_says_so_and_how_well_it_is_known(study, status, words):
+    failing = replace(study.cases[1], status=status)
+    assert f"to 40 % for 0.2 s [IEC 61000-4-11; {words}]" in check_text(replace(study, cases=(failing,)))
+    unnamed = replace(failing, source="")
+    assert f"to 40 % for 0.2 s [{words}]" in check_text(replace(study, cases=(unnamed,)))
+
+
 def test_a_name_is_not_said_twice(study):
     finding = replace(study.findings[0], about="break at MB", sentence="break at MB is not seen")
     assert " 1. break at MB is not seen" in check_text(replace(study, findings=(finding,)))
@@ -125,7 +207,7 @@ def test_a_name_is_not_said_twice(study):
 
 def test_many_groups_of_uncleared_states_are_cut_short_and_counted(study):
     text = check_text(replace(study, closed=study.closed * 9))
-    assert text.count("3 states are closed by case 4") == 4
+    assert text.count("3 scenarios are closed by case 4") == 4
     assert "and 5 smaller groups" in text
 
 
@@ -135,7 +217,9 @@ def test_wide_tables_lose_no_column(study):
         reset="held", phases="any", action="alarm", dropout_ratio=0.975,
     )  # fmt: skip
     wide = replace(study.stages[0], stage=stage, marked=1234.5, marked_unit="%", pickup_percent=159.1)
-    slow = replace(study.cases[0], name="Short circuit behind a board far away", nearest="59N stage 1", margin_v=-149.5)
+    slow = replace(
+        study.cases[0], name="Short circuit behind a board far away", nearest_s="59N stage 1", margin_v=-149.5
+    )
     text = check_text(replace(study, stages=(wide,), cases=(slow,)))
     assert not any(line.endswith("..") for line in text.splitlines())
     assert any(line.endswith("alarm") for line in text.splitlines())
