@@ -2,12 +2,14 @@
 
 from typing import Any
 
-from reportlab.platypus import KeepTogether
+from reportlab.platypus import CondPageBreak
 
 from relaycfg.model.results import Bound, Margins, StageResult
 from relaycfg.sheet import figures
 from relaycfg.sheet.ink import Flow, Ink
 from relaycfg.sheet.settings_table import off, on
+
+BREATH = 24
 
 
 def derivation(ink: Ink) -> Flow:
@@ -54,7 +56,8 @@ def _stage(ink: Ink, number: int, result: StageResult) -> Flow:
         blocks += ink.table(
             wording.lines("derivation.margin_heads"), _margins(ink, result.margins, unit), (20, 12, 12, 8, 48), "lrrrl"
         )
-    return [KeepTogether(blocks)]
+    # A stage is read as a whole: it starts on a new page where it would not end on this one.
+    return [CondPageBreak(sum(block.wrap(ink.width, ink.height)[1] for block in blocks) + BREATH), *blocks]
 
 
 def _bound(bound: Bound) -> list[Any]:

@@ -14,6 +14,8 @@ UNBALANCED_STATES = 16
 """States of highest V0 in which the supply's unbalance is tried at every angle."""
 HIGHEST_DISPLACEMENT = "most displaced by"
 TINY_V = 1e-12
+LARGEST_SCALE = 2.0
+BISECTIONS = 50
 
 
 def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
@@ -24,7 +26,7 @@ def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
     high = int(np.argmax(np.abs(upper).max(axis=-1)))
     low = int(np.argmin(np.abs(lower).min(axis=-1)))
     free = int(np.argmax(np.abs(_l_n(healthy.no_load)).max(axis=-1)))
-    most = float(np.abs(upper[high]).max())
+    least, most = float(np.abs(lower[low]).min()), float(np.abs(upper[high]).max())
     band = f"{supply.band_name}: {supply.band_source}"
     return [
         _standing(
@@ -48,13 +50,13 @@ def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
         _standing(
             "Most unbalanced healthy state",
             f"network; supply V2/V1 {supply.unbalance_percent:g} %, displacement {supply.displacement_percent:g} %",
-            _unbalanced(site, healthy, most),
-            _unbalance_figures(geometry, _unbalanced(site, healthy, most)),
+            _unbalanced(site, healthy, least, most),
+            _unbalance_figures(geometry, _unbalanced(site, healthy, least, most)),
         ),
     ]
 
 
-def _unbalanced(site: Site, healthy: Healthy, most_v: float) -> tuple[Course, ...]:
+def _unbalanced(site: Site, healthy: Healthy, least_v: float, most_v: float) -> tuple[Course, ...]:
     """Courses of highest displacement (V0, and N against PE) and of highest unbalance by each definition.
 
     The supply's V2 is taken of each state's own V1 and tried at every angle, since the worst one depends on the state.
@@ -65,7 +67,7 @@ def _unbalanced(site: Site, healthy: Healthy, most_v: float) -> tuple[Course, ..
     v0 = np.abs(_l_n(taps).mean(axis=-1))
     n_pe = np.nan_to_num(np.abs(taps[:, -1]))
     courses = [
-        _course(f"{HIGHEST_DISPLACEMENT} {what}, state {names[k]}", _within(taps[k], most_v))
+        _course(f"{HIGHEST_DISPLACEMENT} {what}, state {names[k]}", _within(taps[k], least_v, most_v))
         for what, k in (("V0", int(np.argmax(v0))), ("N-PE", int(np.argmax(n_pe))))
     ]
     candidates = np.argsort(v0)[::-1][:UNBALANCED_STATES]
@@ -78,7 +80,7 @@ def _unbalanced(site: Site, healthy: Healthy, most_v: float) -> tuple[Course, ..
     for name, figures in measured_quantities(geometry, tried)["unbalance_percent"].items():
         k, angle = np.unravel_index(int(np.argmax(figures)), figures.shape)
         label = f"highest {name}, state {names[candidates[k]]}"
-        courses.append(_course(label, _within(tried[k, angle], most_v)))
+        courses.append(_course(label, _within(tried[k, angle], least_v, most_v)))
     return tuple(courses)
 
 
@@ -98,19 +100,30 @@ def _displaced(site: Site, taps: ComplexArray) -> ComplexArray:
     return moved
 
 
-def _within(tap: ComplexArray, most_v: float) -> ComplexArray:
-    """Shrink all but the zero sequence until no line exceeds ``most_v``: unbalance lies inside the band."""
+def _within(tap: ComplexArray, least_v: float, most_v: float) -> ComplexArray:
+    """All but the zero sequence scaled until every line lies between the standing extremes, as far as both allow.
+
+    Unbalance lies inside the band, not on top of it: a line pulled below the lower limit means a higher supply.
+    """
     lines = tap[:-1]
-    if np.abs(lines).max() <= most_v:
-        return tap
     v0 = lines.mean()
-    low, high = 0.0, 1.0
-    for _ in range(50):
+
+    def spread(scale: float) -> tuple[float, float]:
+        volts = np.abs(v0 + scale * (lines - v0))
+        return float(volts.min()), float(volts.max())
+
+    low, high = 0.0, LARGEST_SCALE
+    for _ in range(BISECTIONS):
         middle = (low + high) / 2
-        if np.abs(v0 + middle * (lines - v0)).max() <= most_v:
-            low = middle
-        else:
-            high = middle
+        least, most = spread(middle)
+        low, high = (middle, high) if least < least_v and most <= most_v else (low, middle)
+    raised = max(1.0, low)
+    if spread(raised)[1] <= most_v:
+        return np.append(v0 + raised * (lines - v0), tap[-1])
+    low, high = 0.0, 1.0
+    for _ in range(BISECTIONS):
+        middle = (low + high) / 2
+        low, high = (middle, high) if spread(middle)[1] <= most_v else (low, middle)
     return np.append(v0 + low * (lines - v0), tap[-1])
 
 

@@ -92,3 +92,13 @@ l_n_v = [214.0, 226.0, 231.0]
     case = gather(site, site.relay, 10, 1).cases[-1]
     assert case.name == "Crane slews"
     assert np.abs(case.courses[0].segments[0].tap[:-1]) == pytest.approx([214.0, 226.0, 231.0])
+
+
+def test_no_standing_case_leaves_the_limits_of_the_supply(cases: tuple[Case, ...]) -> None:
+    # Unbalance lies inside the band, not on top of it: the extremes are those of the two limits.
+    lowest = np.abs(named(cases, "Supply at its lower").courses[0].segments[0].tap[:-1]).min()
+    highest = np.abs(named(cases, "Supply at its upper").courses[0].segments[0].tap[:-1]).max()
+    for course in named(cases, "Most unbalanced").courses:
+        volts = np.abs(course.segments[0].tap[:-1])
+        assert lowest - 1e-6 <= volts.min()
+        assert volts.max() <= highest + 1e-6
