@@ -13,7 +13,7 @@ NOT_OURS = ("LICENSE",)
 PROMISES = r"\b(safe|complies)\b"
 MACHINES = r"(?<![\w.~-])/(work|home|root|opt|tmp|usr|mnt)/|file://"
 REGISTRIES = r"pypi\.|pythonhosted|proxy\.golang|npmjs|conda\.anaconda|index-url|artifactory"
-ORIGINS = r"\b(transcripts?|lectures?|seed document|the talk)\b"
+ORIGINS = r"\b(" + "|".join(("transcripts?", "lectures?", "seed document", "the talk")) + r")\b"
 
 
 def shipped():

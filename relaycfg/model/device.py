@@ -18,7 +18,6 @@ class Function(StrEnum):
     UNBALANCE = "47"
 
 
-Unbalance = Literal["line-to-neutral deviation", "line-to-line deviation", "V2/V1", "spread"]
 Reset = Literal["instantaneous", "held"]
 
 
@@ -82,7 +81,7 @@ class Element:
     hold_s: float
     accuracy: Accuracy
     quantity: str
-    """59 and 27: "l-n" or "l-l"; 59N: "v0" or "3v0"; 47: its Unbalance definition."""
+    """59 and 27: "l-n" or "l-l"; 59N: "v0" or "3v0"; 47: the name of its unbalance definition."""
     terminal: str = ""
     knob: str = ""
 

@@ -3,8 +3,9 @@
 import re
 
 from relaycfg import units
+from relaycfg.model.break_results import Share
 from relaycfg.model.device import Function
-from relaycfg.model.results import Share, StageResult
+from relaycfg.model.results import StageResult
 
 ABSENT = "–"
 SHORT_DIGITS, LONG_DIGITS = 12, 6

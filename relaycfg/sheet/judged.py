@@ -4,7 +4,8 @@ from typing import Any
 
 from markupsafe import Markup
 
-from relaycfg.model.results import CaseResult, PlaceSummary
+from relaycfg.model.break_results import PlaceSummary
+from relaycfg.model.results import CaseResult
 from relaycfg.sheet import figures
 from relaycfg.sheet.ink import Flow, Ink
 from relaycfg.sheet.inputs import status

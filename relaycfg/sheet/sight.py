@@ -4,8 +4,8 @@ from typing import Any
 
 from markupsafe import Markup
 
+from relaycfg.model.break_results import PlaceSummary
 from relaycfg.model.device import Function
-from relaycfg.model.results import PlaceSummary
 from relaycfg.sheet import figures
 from relaycfg.sheet.ink import Flow, Ink
 from relaycfg.sheet.settings_table import on

@@ -2,9 +2,10 @@
 
 import numpy as np
 
+from relaycfg.model.break_results import PlaceSummary
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray
-from relaycfg.model.results import ClosedGroup, Finding, PlaceSummary
+from relaycfg.model.results import ClosedGroup, Finding
 from relaycfg.model.settings import Settings
 from relaycfg.study.coverage import cover_of
 from relaycfg.study.evidence import Evidence

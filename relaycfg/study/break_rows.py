@@ -4,8 +4,8 @@ import math
 
 import numpy as np
 
+from relaycfg.model.break_results import BoardVolts, BreakRow, Flag, RelayVolts
 from relaycfg.model.geometry import Geometry
-from relaycfg.model.results import BoardVolts, BreakRow, Flag, RelayVolts
 from relaycfg.model.site import Site
 from relaycfg.network import LoadStates, Network, Solved, tap
 from relaycfg.relay import measured_quantities

@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from relaycfg.model.results import BreakRow, BreakStudy, PlaceSummary
+from relaycfg.model.break_results import BreakRow, BreakStudy, PlaceSummary
 from relaycfg.model.site import NONE, Site
 from relaycfg.network import LoadStates, Network, connected, corners, join, least, sampled
 from relaycfg.study.break_rows import break_rows

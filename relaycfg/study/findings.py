@@ -1,7 +1,8 @@
 """Findings: every exception, warning and note in order, with what to do and what happens if it is left."""
 
+from relaycfg.model.break_results import PlaceSummary
 from relaycfg.model.geometry import BoolArray
-from relaycfg.model.results import CaseResult, ClosedGroup, Finding, PlaceSummary
+from relaycfg.model.results import CaseResult, ClosedGroup, Finding
 from relaycfg.model.settings import Settings
 from relaycfg.study.break_findings import blind, floating_feeds, not_cleared, places_findings, useless_stages
 from relaycfg.study.evidence import Evidence

@@ -2,9 +2,9 @@
 
 import numpy as np
 
+from relaycfg.model.break_results import ElementSight, Harm, Operation, Percentiles, PlaceSummary, WorstState
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
-from relaycfg.model.results import ElementSight, Harm, Operation, Percentiles, PlaceSummary, WorstState
 from relaycfg.model.site import Relay, Site
 from relaycfg.network import LoadStates, Network, Solved, corners, healthy_emf
 from relaycfg.study.deadlines import high_deadline_s

@@ -2,7 +2,7 @@
 
 import math
 
-from relaycfg.model.results import Share
+from relaycfg.model.break_results import Share
 
 Z_95 = 1.959963984540054
 """Two-sided 95 percent point of the normal distribution."""

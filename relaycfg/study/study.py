@@ -4,8 +4,9 @@ from dataclasses import replace
 
 import numpy as np
 
+from relaycfg.model.break_results import Harm, Operation
 from relaycfg.model.cases import Case, Course, Segment
-from relaycfg.model.results import Harm, Operation, PlanePoint, Study
+from relaycfg.model.results import PlanePoint, Study
 from relaycfg.model.settings import Settings
 from relaycfg.model.site import Relay, Site
 from relaycfg.study.asymmetry import smallest_asymmetry, worked_break

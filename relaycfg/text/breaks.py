@@ -3,7 +3,7 @@
 from collections.abc import Sequence
 
 from relaycfg import units
-from relaycfg.model.results import BreakRow, BreakStudy, PlaceSummary
+from relaycfg.model.break_results import BreakRow, BreakStudy, PlaceSummary
 from relaycfg.model.site import NONE, Site
 from relaycfg.text.figures import FLAGS, UNBALANCES, counted, place, share, together
 from relaycfg.text.layout import heading, listing, shortened, shown, table, wrapped

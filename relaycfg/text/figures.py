@@ -3,8 +3,9 @@
 from collections.abc import Sequence
 
 from relaycfg import units
+from relaycfg.model.break_results import Flag, Share
 from relaycfg.model.device import Function
-from relaycfg.model.results import CaseResult, Flag, Operated, Share, StageResult
+from relaycfg.model.results import CaseResult, Operated, StageResult
 from relaycfg.model.site import NONE, SOURCE
 
 PLACES = {SOURCE: "star link", NONE: "no break"}

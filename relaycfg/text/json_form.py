@@ -5,8 +5,9 @@ import math
 from enum import Enum
 from typing import Any
 
+from relaycfg.model.break_results import BreakRow, BreakStudy
 from relaycfg.model.device import Function
-from relaycfg.model.results import BreakRow, BreakStudy, StageResult, Study
+from relaycfg.model.results import StageResult, Study
 from relaycfg.model.settings import Settings, Stage
 
 SCHEMA = 1

@@ -4,6 +4,7 @@ import cmath
 import math
 from dataclasses import replace
 
+from relaycfg.model import break_results as b
 from relaycfg.model import results as r
 from relaycfg.model import site as s
 from relaycfg.model.device import Accuracy, Device, Element, Function, SettableRange
@@ -53,11 +54,11 @@ def device() -> Device:
     )
 
 
-def share(count: int, of: int = 400) -> r.Share:
+def share(count: int, of: int = 400) -> b.Share:
     p, z = count / of, 1.96
     middle = (p + z * z / (2 * of)) / (1 + z * z / of)
     half = z / (1 + z * z / of) * math.sqrt(p * (1 - p) / of + z * z / (4 * of * of))
-    return r.Share(count, of, max(0.0, middle - half), min(1.0, middle + half))
+    return b.Share(count, of, max(0.0, middle - half), min(1.0, middle + half))
 
 
 def the_site(paper: str = "A4", boards: int = 3, inputs: int = 60) -> s.Site:
@@ -298,9 +299,9 @@ def cases() -> tuple[r.CaseResult, ...]:
     )
 
 
-def summary(at: str, conductor: str, seen: bool, why: str, names: tuple[str, ...]) -> r.PlaceSummary:
+def summary(at: str, conductor: str, seen: bool, why: str, names: tuple[str, ...]) -> b.PlaceSummary:
     sights = tuple(
-        r.ElementSight(f, share(c), t) for f, c, t in ((OVER, 301, 0.35), (UNDER, 122, 1.5), (SHIFT, 371, 0.08))
+        b.ElementSight(f, share(c), t) for f, c, t in ((OVER, 301, 0.35), (UNDER, 122, 1.5), (SHIFT, 371, 0.08))
     )
     classes = {
         "high volts / in time": share(212),
@@ -308,7 +309,7 @@ def summary(at: str, conductor: str, seen: bool, why: str, names: tuple[str, ...
         "none / in time": share(78),
         "none / none": share(29),
     }
-    return r.PlaceSummary(
+    return b.PlaceSummary(
         at,
         conductor,
         seen,
@@ -320,10 +321,10 @@ def summary(at: str, conductor: str, seen: bool, why: str, names: tuple[str, ...
         share(293),
         share(29) if seen else share(309),
         (
-            r.Percentiles("highest L-N of any board", "V", 233.0, 271.4, 327.9, 361.2),
-            r.Percentiles("V0 at the relay", "V", 3.0, 61.2, 119.0, 151.3),
+            b.Percentiles("highest L-N of any board", "V", 233.0, 271.4, 327.9, 361.2),
+            b.Percentiles("V0 at the relay", "V", 3.0, 61.2, 119.0, 151.3),
         ),
-        (r.WorstState(112, names[-1], "L2", 361.2, 7), r.WorstState(309, names[0], "L3", 358.0, 9)),
+        (b.WorstState(112, names[-1], "L2", 361.2, 7), b.WorstState(309, names[0], "L3", 358.0, 9)),
         sights if seen else (),
         names,
         () if seen else ("Main board",),
@@ -498,7 +499,7 @@ def study(paper: str = "A4", boards: int = 3, exceptions: int = 0, inputs: int =
         settings=settings,
         stages=marks,
         cases=cases(),
-        breaks=r.BreakStudy((), places, 2, len(places), ("Third harmonic was not part of the sampled states.",)),
+        breaks=b.BreakStudy((), places, 2, len(places), ("Third harmonic was not part of the sampled states.",)),
         corridors=corridors(),
         closed=(
             r.ClosedGroup(

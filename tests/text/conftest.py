@@ -4,6 +4,7 @@ from dataclasses import replace
 
 import pytest
 
+from relaycfg.model import break_results as b
 from relaycfg.model import results as r
 from relaycfg.model.device import Accuracy, Device, Element, Function, SettableRange
 from relaycfg.model.geometry import three_phase
@@ -71,29 +72,29 @@ def site(device):
 
 
 def volts(*l_n_v):
-    return r.BoardVolts(l_n_v, (0.0, -120.0, 120.0), (398.0, 398.0, 398.0), 57.5, None, 12.0, None)
+    return b.BoardVolts(l_n_v, (0.0, -120.0, 120.0), (398.0, 398.0, 398.0), 57.5, None, 12.0, None)
 
 
 def row(at, state, l_n_v=(172.5, 263.5, 263.5), joint_ohm=None):
     unbalance = {"l_n_deviation": 26.0, "l_l_deviation": 0.0, "v2_v1": 0.0, "spread": 39.0}
-    relay = r.RelayVolts(l_n_v, (398.0, 398.0, 398.0), 57.5, None, unbalance)
+    relay = b.RelayVolts(l_n_v, (398.0, 398.0, 398.0), 57.5, None, unbalance)
     boards = {"MB": volts(*l_n_v), "Workshop": volts(*(v + 1 for v in l_n_v))}
-    companion = r.BreakRow(at, "N", joint_ohm, state, "converged", (), 0, 57.5, 0, {"R1": relay}, boards, None)
+    companion = b.BreakRow(at, "N", joint_ohm, state, "converged", (), 0, 57.5, 0, {"R1": relay}, boards, None)
     return replace(companion, flags=("below band",), all_impedance=companion)
 
 
 def share(count, of=200):
-    return r.Share(count, of, 0.01, 0.99)
+    return b.Share(count, of, 0.01, 0.99)
 
 
 def summary(at, seen):
     why = "" if seen else "the break is not upstream of the relay's tap at MB"
-    percentiles = (r.Percentiles("highest line-to-neutral, any board", "V", 231, 266, 301.2, 344.4),)
-    worst = (r.WorstState(17, "Workshop", "L2", 344.4, 5),)
+    percentiles = (b.Percentiles("highest line-to-neutral, any board", "V", 231, 266, 301.2, 344.4),)
+    worst = (b.WorstState(17, "Workshop", "L2", 344.4, 5),)
     classes = {"high volts / in time": share(120), "high volts / late": share(3), "none / none": share(77)}
-    sights = (r.ElementSight(Function.OVERVOLTAGE, share(123), 0.2),)
+    sights = (b.ElementSight(Function.OVERVOLTAGE, share(123), 0.2),)
     away = () if seen else ("Workshop",)
-    return r.PlaceSummary(
+    return b.PlaceSummary(
         at, "N", seen, why, 200, 1, {"unstable": 0}, classes, share(123), share(77 if seen else 0),
         percentiles, worst, sights, ("MB", "Workshop"), (), away, 12.0,
     )  # fmt: skip
@@ -101,7 +102,7 @@ def summary(at, seen):
 
 @pytest.fixture
 def break_study():
-    return r.BreakStudy(
+    return b.BreakStudy(
         (row("MB", "connected"), row("Workshop", "connected"), row("MB", "least")),
         (summary("MB", True), summary("Workshop", False)),
         1,

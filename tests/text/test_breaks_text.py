@@ -2,7 +2,7 @@
 
 from dataclasses import replace
 
-from relaycfg.model.results import Share
+from relaycfg.model.break_results import Share
 from relaycfg.text import breaks_text
 
 

@@ -9,7 +9,7 @@ from importlib import resources
 import jsonschema
 import pytest
 
-from relaycfg.model import results
+from relaycfg.model import break_results, results
 from relaycfg.model.device import Function
 from relaycfg.model.settings import Settings, Stage
 from relaycfg.text import breaks_dict, study_dict
@@ -32,9 +32,9 @@ SHAPES = {
     "step": results.CurveStep,
     "point": results.PlanePoint,
     "margins": results.Margins,
-    "summary": results.PlaceSummary,
-    "board": results.BoardVolts,
-    "relay": results.RelayVolts,
+    "summary": break_results.PlaceSummary,
+    "board": break_results.BoardVolts,
+    "relay": break_results.RelayVolts,
 }
 
 
@@ -76,7 +76,7 @@ def test_every_field_of_a_study_is_a_key_of_the_same_name(study):
     result = study_dict(study, PROGRAM, explain=True)
     assert names(results.Study) - set(result) == ELSEWHERE
     assert names(results.Study) - set(study_dict(study, PROGRAM)) == ELSEWHERE | EXPLAINED
-    assert names(results.BreakStudy) - {"rows", "summaries"} <= set(result)
+    assert names(break_results.BreakStudy) - {"rows", "summaries"} <= set(result)
     assert (len(result["breaks"]), len(result["summary"])) == (len(study.breaks.rows), len(study.breaks.summaries))
     assert names(Settings) | {"digest"} == set(result["settings"])
 
