@@ -74,8 +74,14 @@ def total_clearing(
     element: Element, delay_s: FloatArray, device: Device, relay: Relay, frequency_hz: float
 ) -> FloatArray:
     """Longest time [s] from the voltage at the tap to the open switch, for set delays of any shape."""
-    measuring_s = window_s(device, frequency_hz) + refresh_s(device, frequency_hz)
-    return longest_delay(element, delay_s) + measuring_s + relay.output_s + relay.coil_and_breaker_s
+    return (
+        longest_delay(element, delay_s) + measuring_s(device, frequency_hz) + relay.output_s + relay.coil_and_breaker_s
+    )
+
+
+def measuring_s(device: Device, frequency_hz: float) -> float:
+    """Longest time [s] a change takes to show, or an excursion stays in what is measured: window and refresh."""
+    return window_s(device, frequency_hz) + refresh_s(device, frequency_hz)
 
 
 def window_s(device: Device, frequency_hz: float) -> float:

@@ -8,7 +8,7 @@ from relaycfg.model.device import Device, Function
 from relaycfg.model.geometry import BoolArray, ComplexArray, FloatArray, Geometry
 from relaycfg.model.settings import Settings
 from relaycfg.model.site import Relay
-from relaycfg.relay.bands import least_sensitive, most_sensitive, refresh_s, window_s
+from relaycfg.relay.bands import least_sensitive, measuring_s, most_sensitive
 from relaycfg.relay.machine import run
 from relaycfg.relay.quantities import severities
 
@@ -32,12 +32,12 @@ def play(
     """When each active stage operates [s] from the start of the course, by stage label; inf where it holds.
 
     ``course_tap`` [segments, lines + 1] as phasors [V], ``duration_s`` [segments], the last may be inf. On the
-    sensitive side (must hold) a stage sits at its most sensitive, an excursion lasts one measuring window longer, and
+    sensitive side (must hold) a stage sits at its most sensitive, an excursion lasts longer by window and refresh, and
     the figure is the earliest instant of decision. On the insensitive side (must be cleared) it sits at its least
     sensitive, the delay is longer by window and refresh, and the figure is the latest instant of the open switch.
     A stage whose element the device lacks does not operate.
     """
-    window, refresh = window_s(device, frequency_hz), refresh_s(device, frequency_hz)
+    measuring = measuring_s(device, frequency_hz)
     tap, lengths, blocked = _with_blocking(course_tap, duration_s, DEAD_SHARE * nominal_v, settings.inhibit_s)
     instants: dict[str, float] = {}
     for stage in settings.active:
@@ -55,12 +55,12 @@ def play(
             lengths[np.newaxis],
             band.pickup,
             band.dropout,
-            band.delay_s + (0.0 if sensitive else window + refresh),
+            band.delay_s + (0.0 if sensitive else measuring),
             stage.reset,
             stage.hold_s,
             device.timers,
             stage.phases,
-            lag_s=window if sensitive else 0.0,
+            lag_s=measuring if sensitive else 0.0,
         )
         instants[stage.label] = float(trip[0]) + (0.0 if sensitive else relay.output_s + relay.coil_and_breaker_s)
     return instants

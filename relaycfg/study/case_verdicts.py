@@ -10,7 +10,7 @@ from relaycfg.model.device import Function
 from relaycfg.model.geometry import FloatArray
 from relaycfg.model.results import CaseResult, Operated
 from relaycfg.model.settings import Settings
-from relaycfg.relay import play, run, window_s
+from relaycfg.relay import measuring_s, play, run
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.margins import Security, as_set
 from relaycfg.study.ride_through import stack
@@ -85,7 +85,7 @@ def _play(evidence: Evidence, case: Case, active: ActiveStage, settings: Setting
         active.stage.hold_s,
         device.timers,
         active.stage.phases,
-        window_s(device, frequency),
+        measuring_s(device, frequency),
     )
     return _Play(active, trip - lead_s)
 

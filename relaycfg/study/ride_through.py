@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from relaycfg.model.cases import Case, Course
 from relaycfg.model.device import Device, Element
 from relaycfg.model.geometry import FloatArray, Geometry
-from relaycfg.relay import severities, window_s
+from relaycfg.relay import measuring_s, severities
 
 STANDING = -1
 NOTHING = -2
@@ -31,7 +31,8 @@ class Runs:
     case_names: dict[int, str]
     standing: float
     standing_name: str
-    window_s: float
+    lag_s: float
+    """Window and refresh of the device: how long an excursion stays in what it measures."""
     shared: bool
     every: bool = False
     """One counter that runs only while all channels are picked up (a stage set to all phases)."""
@@ -105,7 +106,7 @@ def runs_of(cases: tuple[Case, ...], element: Element, device: Device, geometry:
         {case.number: f"case {case.number}, {case.name}" for case, _ in passing},
         float(still[worst].max()),
         course_name(*lasting[worst]),
-        window_s(device, frequency_hz),
+        measuring_s(device, frequency_hz),
         device.timers == "shared",
     )
 
@@ -117,7 +118,7 @@ def course_name(case: Case, course: Course) -> str:
 
 
 def run_lengths(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: float = 0.0) -> FloatArray:
-    """How long each course keeps the timer running [courses, pickups], one measuring window included.
+    """How long each course keeps the timer running [courses, pickups], window and refresh included.
 
     ``pickup`` and ``dropout`` [pickups] are severities already on their sensitive side. A falling excursion stays
     in the window, so each run is that much longer and swallows shorter gaps; infinite where the standing severity
@@ -138,7 +139,7 @@ def run_lengths(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: flo
         longest = np.maximum(longest, reached)
         gap = np.where(timing, 0.0, gap + seconds - counted)
         count = np.where(gap > hold_s + GRAIN_S, 0.0, reached)
-        tail = np.where(timing & (seconds > 0), runs.window_s, tail - counted)
+        tail = np.where(timing & (seconds > 0), runs.lag_s, tail - counted)
     ends_up = picked & (runs.standing >= dropout)[None, :, None]
     endless = ends_up.all(axis=-1) if runs.every else ends_up.any(axis=-1)
     longest = np.maximum(longest, np.where(count > 0, count + tail, 0.0))

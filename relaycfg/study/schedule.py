@@ -5,7 +5,7 @@ import numpy as np
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import ComplexArray
 from relaycfg.model.results import TestPoint
-from relaycfg.relay import refresh_s, severities, window_s
+from relaycfg.relay import measuring_s, severities
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.stages import ActiveStage
 
@@ -50,7 +50,7 @@ def _pickup_point(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveS
 def _time_point(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveStage, ...], line: str) -> TestPoint:
     stage, device = active.stage, evidence.relay.device
     frequency = evidence.site.supply.frequency_hz
-    measuring = window_s(device, frequency) + refresh_s(device, frequency) + evidence.relay.output_s
+    measuring = measuring_s(device, frequency) + evidence.relay.output_s
     timing = float(active.ladder.element.accuracy.time_error(stage.delay_s))
     sure = 2 * float(active.ladder.element.accuracy.pickup_error(stage.pickup))
     if stage.function is Function.UNDERVOLTAGE:

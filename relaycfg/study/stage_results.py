@@ -121,7 +121,8 @@ def _bounds(active: ActiveStage, secure: Security, depend: Dependability) -> tup
                 reach + timing,
                 "s",
                 secure.seconds_case,
-                f"stays picked up {reach:.3f} s with {runs.window_s:.3f} s of window, + timing error {timing:.3f} s",
+                f"stays picked up {reach:.3f} s with {runs.lag_s:.3f} s of window and refresh, "
+                f"+ timing error {timing:.3f} s",
                 _source(secure.seconds_case),
             )
         )

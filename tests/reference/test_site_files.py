@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from relaycfg.files import read_site
-from relaycfg.model.results import BreakRow
+from relaycfg.model.break_results import BreakRow
 from relaycfg.study import breaks
 
 ENTRIES = tomllib.loads((Path(__file__).parent / "worked-examples.toml").read_text())
