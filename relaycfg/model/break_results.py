@@ -116,7 +116,7 @@ class PlaceSummary:
     """Keys "harm / operation", such as "high volts / in time"; only with settings."""
     harmful: Share
     undetected: Share
-    """No harm and no operation: an undetected break, never a pass."""
+    """Under some load model no harm and no operation: an undetected break, never a pass."""
     percentiles: tuple[Percentiles, ...]
     worst: tuple[WorstState, ...]
     elements: tuple[ElementSight, ...]

@@ -60,6 +60,19 @@ def pickup_at_most_sensitive(element: Element, severity: float) -> float:
     return max(severity / (1 - share), severity + fixed)
 
 
+def pickup_at_least_sensitive(element: Element, severity: float) -> float:
+    """The pickup as set (volts or points) whose least sensitive end is ``severity``."""
+    share, fixed = element.accuracy.pickup_percent / 100, element.accuracy.pickup_abs
+    if element.function is Function.UNDERVOLTAGE:
+        volts = -severity
+        if element.accuracy.combine == "sum":
+            return (volts + fixed) / (1 - share)
+        return max(volts / (1 - share), volts + fixed)
+    if element.accuracy.combine == "sum":
+        return (severity - fixed) / (1 + share)
+    return min(severity / (1 + share), severity - fixed)
+
+
 def shortest_delay(element: Element, delay_s: FloatArray) -> FloatArray:
     """Set delays [s] less their timing error, not below zero."""
     return np.maximum(delay_s - element.accuracy.time_error(delay_s), 0.0)

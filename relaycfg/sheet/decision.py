@@ -31,6 +31,7 @@ def decision(ink: Ink) -> Flow:
         ink.gap(7),
         ink.say("decision.verdict", "big", study=study, exceptions=study.exceptions),
         *_exceptions(ink),
+        *_warnings(ink),
         *_uncleared(ink),
         *_unexamined(ink),
         ink.gap(3),
@@ -105,6 +106,12 @@ def _uncleared(ink: Ink) -> Flow:
     alone = covers.get(ALL, 0.0)
     fed = next((percent for name, percent in covers.items() if name.startswith(f"{ALL},")), None)
     return [ink.say("decision.uncleared", "body", study=study, harmful=harmful, alone=alone, fed=fed)]
+
+
+def _warnings(ink: Ink) -> Flow:
+    """How many warnings the findings hold, and on which page."""
+    count = sum(f.severity == "warning" for f in ink.study.findings)
+    return _line(ink, "decision.warnings", "findings", 0, 8.4, count=count) if count else []
 
 
 def _unexamined(ink: Ink) -> Flow:

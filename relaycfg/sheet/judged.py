@@ -26,6 +26,8 @@ def cases(ink: Ink) -> Flow:
 def _case(ink: Ink, c: CaseResult) -> list[Any]:
     what = ink.wording.text("cases.case", c=c, status=status(ink, c.status))
     outcome = c.outcome if c.passed else Markup("<b>! {}</b>").format(c.outcome)
+    if c.outcome == "hold" and c.margin_v is not None and c.margin_v < 0:
+        outcome = Markup("<b>! {}</b>").format(ink.wording.text("cases.no_reset"))
     if c.operated:
         first = "; ".join(ink.wording.text("cases.operated", o=o) for o in c.operated[:OPERATED_SHOWN])
         more = len(c.operated) - OPERATED_SHOWN

@@ -2,6 +2,8 @@
 
 from typing import Any
 
+from relaycfg.model.results import Study
+from relaycfg.model.site import NONE
 from relaycfg.sheet import figures
 from relaycfg.sheet.ink import GREY, HAIR, Flow, Ink
 
@@ -24,7 +26,10 @@ def tests(ink: Ink) -> Flow:
         for number, point in enumerate(study.tests, 1)
     ]
     blanks = [("LINEBEFORE", (6, 0), (8, -1), HAIR, GREY), ("TOPPADDING", (0, 1), (-1, -1), 4)]
-    record = [[text, "", ""] for text in wording.lines("tests.record", study=study, site=study.site)]
+    record = [
+        [text, "", ""]
+        for text in wording.lines("tests.record", study=study, site=study.site, connected=_connected_v0(study))
+    ]
     tall = [("TOPPADDING", (0, 1), (-1, -1), 5), ("BOTTOMPADDING", (0, 1), (-1, -1), 5)]
     return [
         *ink.heading("tests"),
@@ -39,3 +44,10 @@ def tests(ink: Ink) -> Flow:
 def _bare(value: float, unit: str) -> str:
     """The figure alone, rounded as its unit asks."""
     return figures.by_unit(value, unit).removesuffix(unit).rstrip()
+
+
+def _connected_v0(study: Study) -> float | None:
+    """V0 at the relay of the sound network with every load connected."""
+    row = next((r for r in study.breaks.rows if (r.at, r.state) == (NONE, "connected")), None)
+    relay = row.relays.get(study.settings.for_relay) if row else None
+    return relay.v0_v if relay else None

@@ -6,7 +6,7 @@ import numpy as np
 
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
-from relaycfg.relay import pickup_at_most_sensitive
+from relaycfg.relay import pickup_at_least_sensitive, pickup_at_most_sensitive
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.ladder import UNIT_TIME
 from relaycfg.study.ride_through import STANDING, Runs, behind_name, ride_through, run_lengths
@@ -57,7 +57,7 @@ def security(active: ActiveStage) -> Security:
         band.delay_s > reach,
         as_set(active, least) if found else None,
         _finite(band.delay_s - reach) if reach > 0 else None,
-        _units(active),
+        _units(active) if band.delay_s > reach else None,
         band.pickup - least if found else None,
         volts_case if found else "no case limits it",
         behind_name(runs, int(now.behind[0])),
@@ -122,6 +122,8 @@ class Dependability:
     seconds: float | None
     units: float | None
     state: str
+    room: float = 0.0
+    """Severity between the least sensitive end and that state."""
 
 
 def dependability(
@@ -145,7 +147,10 @@ def dependability(
     if not name:
         return Dependability(None, None, None, "no core state depends on this stage alone")
     in_time = np.log((seconds + active.clearing_s) / active.clearing_s) / np.log(UNIT_TIME)
-    return Dependability(volts, seconds, float(min(volts / active.ladder.unit, in_time)), name)
+    limit = pickup_at_least_sensitive(active.ladder.element, active.insensitive.pickup + volts)
+    return Dependability(
+        abs(limit - active.stage.pickup), seconds, float(min(volts / active.ladder.unit, in_time)), name, volts
+    )
 
 
 def _finite(value: float) -> float | None:

@@ -7,7 +7,7 @@ from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
 from relaycfg.model.site import Relay, Site
 from relaycfg.network import LoadStates, Network, Solved, corners, healthy_emf
-from relaycfg.study.deadlines import high_deadline_s
+from relaycfg.study.deadlines import high_deadline_s, low_deadline_s
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.scenarios import Scenarios, seen_places
 from relaycfg.study.shares import share
@@ -73,7 +73,7 @@ def summarise(
     harmed = np.isfinite(high_deadline_s(equipment, magnitudes.max(axis=1))) & solved.converged
     behind = set(site.behind(relay.trips)) if relay is not None else set()
     touched = tuple(b for k, b in enumerate(network.boards) if harmed[k].any())
-    anywhere: BoolArray = np.logical_or.reduce(harmed, axis=0)
+    anywhere: BoolArray = np.stack([harmed.any(axis=0), _low_harm(site, network, magnitudes) & solved.converged])
     classes, harmful, undetected, unresolved = _classes(pair, evidence, stages, anywhere, solved, bool(why))
     return PlaceSummary(
         place,
@@ -100,6 +100,15 @@ def summarise(
     )
 
 
+def _low_harm(site: Site, network: Network, magnitudes: FloatArray) -> BoolArray:
+    """States [states] in which a board that minds low volts has them."""
+    minding = {load.board for load in site.loads if load.minds_low_v}
+    boards = [k for k, name in enumerate(network.boards) if name in minding]
+    if not boards:
+        return np.zeros(magnitudes.shape[-1], bool)
+    return np.isfinite(low_deadline_s(site.equipment, magnitudes[boards].min(axis=(0, 1))))
+
+
 def _classes(
     pair: tuple[Scenarios, Scenarios] | None,
     evidence: Evidence | None,
@@ -108,28 +117,35 @@ def _classes(
     solved: Solved,
     blind: bool,
 ) -> tuple[dict[str, int], int, int, int]:
-    """Counts a class; without a relay, or for a break it cannot see, nothing operates."""
+    """Counts a class, then harmful, undetected and unresolved states.
+
+    ``harmed`` [2, states]: high and low volts at any board. Without a relay, or for a break it cannot see, nothing
+    operates. A state is undetected if under some load model it does no harm and nothing operates.
+    """
     if pair is None or evidence is None:
         lost = int((~solved.converged).sum())
-        count = int(harmed.sum())
-        none = len(harmed) - count - lost
-        return ({"high volts / none": count, "none / none": none} if blind else {}), count, none if blind else 0, lost
+        kinds = harmed[0] + 2 * harmed[1]
+        counts = {f"{HARMS[h]} / none": int((solved.converged & (kinds == h)).sum()) for h in range(len(HARMS))}
+        count, none = sum(counts.values()) - counts["none / none"], counts["none / none"]
+        return ({k: v for k, v in counts.items() if v} if blind else {}), count, none if blind else 0, lost
     resolved = pair[0].resolved & pair[1].resolved
     high, low = pair[0].high | pair[1].high, pair[0].low | pair[1].low
-    harm = np.where(high & low, 3, np.where(low, 2, np.where(high, 1, 0)))
+    harm = high + 2 * low
     operation = np.zeros(len(harm), int)
+    hidden = np.zeros(len(harm), bool)
     for scenario in pair:
         operated = operating_s(stages, scenario, evidence)
         this = np.where(~np.isfinite(operated), 2, np.where(operated > scenario.deadline_s, 1, 0))
         # Where one model harms and the other does not, only the harmful one says whether the state is cleared.
         operation = np.maximum(operation, np.where(scenario.harmful | (harm == 0), this, 0))
+        hidden |= ~scenario.harmful & ~np.isfinite(operated)
     counts = {
         f"{HARMS[h]} / {OPERATIONS[o]}": int((resolved & (harm == h) & (operation == o)).sum())
         for h in range(len(HARMS))
         for o in range(len(OPERATIONS))
     }
     harmful = int((resolved & (harm > 0)).sum())
-    return {k: v for k, v in counts.items() if v}, harmful, counts["none / none"], int((~resolved).sum())
+    return {k: v for k, v in counts.items() if v}, harmful, int((resolved & hidden).sum()), int((~resolved).sum())
 
 
 def _percentiles(site: Site, network: Network, highest: FloatArray, solved: Solved) -> tuple[Percentiles, ...]:

@@ -147,7 +147,10 @@ def _with_detection(ladder: Ladder, rungs: tuple[Rung, ...], floor: float) -> tu
     if len(rungs) >= ladder.element.stages:
         return rungs
     detection = detection_rung(ladder, floor)
-    if detection is None or (rungs and detection.pickup >= rungs[0].pickup):
+    if detection is None:
+        return rungs
+    # A stage that its errors could not tell from the next one is not worth a setting.
+    if rungs and ladder.insensitive[detection.pickup] >= ladder.sensitive[rungs[0].pickup]:
         return rungs
     return (detection, *rungs)
 

@@ -137,7 +137,7 @@ def _bounds(active: ActiveStage, secure: Security, depend: Dependability) -> tup
                 unit,
                 depend.state,
                 f"least sensitive {stage.pickup:.1f} {side} error {error:.1f} = {surely:.1f} {unit}; "
-                f"the state shows {surely + sign * depend.volts:.1f} {unit}",
+                f"the state shows {surely + sign * depend.room:.1f} {unit}",
                 "network",
             )
         )

@@ -324,3 +324,31 @@ def test_no_state_without_a_solution_is_counted_as_seen_or_cleared(tmp_path: Pat
     assert main.unresolved > 0
     assert all(sight.share.count <= main.samples - main.unresolved for sight in main.elements)
     assert next(c for c in study.coverage if c.elements == "all").cleared_percent < 100  # type: ignore[operator]
+
+
+def test_a_state_hidden_under_one_load_model_counts_as_undetected(derived: Study) -> None:
+    for place in derived.breaks.summaries:
+        none = place.classes.get("none / none")
+        assert place.undetected.count >= (none.count if none else 0)
+
+
+def test_low_volts_at_a_place_the_relay_cannot_see_are_classified(tmp_path: Path) -> None:
+    minding = yard.UNEQUAL.replace('name = "Shed 1 0"', 'name = "Shed 1 0"\nminds_low_v = true')
+    site = yard.site(tmp_path, loads=minding, more="\n[equipment]\nsustained_low_v = 184\n")
+    shed = next(p for p in derive(site, 200, 1).breaks.summaries if p.at == "Shed")
+    assert any(name.startswith(("low volts", "both")) for name in shed.classes)
+
+
+def test_the_dependability_margin_is_exact(tmp_path: Path) -> None:
+    # Moving the pickup by the printed margin loses the core state that depends on it; by less it does not.
+    site = yard.site(tmp_path)
+    settings = Settings("R1", "Test relay", "", (stage(Function.OVERVOLTAGE, 1, 270.0, 0.05),), 0.5, "by hand")
+    found = check(site, settings, 200, 1)
+    margins = found.stages[0].margins
+    assert margins is not None
+    assert margins.dependability_v is not None
+    uncleared = []
+    for factor in (0.0, 0.999, 1.001):
+        moved = replace(settings.stages[0], pickup=270.0 + factor * margins.dependability_v)
+        uncleared.append(check(site, replace(settings, stages=(moved,)), 200, 1).uncleared)
+    assert uncleared[0] <= uncleared[1] < uncleared[2]
