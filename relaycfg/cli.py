@@ -1,14 +1,12 @@
-"""Commands, options and exit codes: the only place that prints, and the one that joins files, study, sheet and text."""
+"""Commands and exit codes: the one place that joins files, study, sheet and text."""
 
 import contextlib
-import json
 import os
 import re
 import sys
-import tomllib
 import traceback
 from pathlib import Path
-from typing import TYPE_CHECKING, Any, NoReturn
+from typing import TYPE_CHECKING, NoReturn
 
 import click
 
@@ -28,6 +26,18 @@ from relaycfg.options import (
     study_options,
     three_readings,
 )
+from relaycfg.streams import (
+    NO_OUTPUT,
+    STDIN,
+    announce,
+    complain,
+    show_json,
+    show_text,
+    show_written,
+    standard_input,
+    tell,
+    why,
+)
 
 if TYPE_CHECKING:
     from relaycfg.model.results import Study
@@ -38,14 +48,6 @@ DONE, EXCEPTIONS, BAD_INPUT = 0, 1, 2
 INTERRUPTED, PIPE_CLOSED = 130, 141
 GIVE_OUTPUT = "the result goes to standard output, give a path for the file"
 GIVE_SETTINGS = "only a site is read from standard input, give the path of the settings"
-NO_OUTPUT = "standard output takes no more"
-STDIN = Path("/dev/stdin")
-"""The file that standard input comes from, where it comes from one and the system has such a path."""
-BYTE_ORDER_MARK = "\ufeff"
-FEW_SAMPLES = 200
-"""Below this the 95 % intervals of shares are wider than some 14 percent points."""
-PATIENCE_S = 10.0
-"""Longer than this asks for a word beforehand."""
 BREAK_S, STUDY_S = 0.0001, 0.001
 """Seconds that one load state at one place takes, on a slow machine: breaks alone, and with settings."""
 
@@ -132,7 +134,7 @@ def breaks(
     if form == "json":
         show_json(breaks_dict(result, PROGRAM, found.digest, seed, drawn))
     else:
-        click.echo(breaks_text(found, result, everything), nl=False)
+        show_text(breaks_text(found, result, everything))
     return DONE
 
 
@@ -172,7 +174,7 @@ def derive(site: str, output: Path, explain: bool, force: bool, form: str, sampl
     if form == "json":
         show_json(study_dict(result, PROGRAM, explain))
     else:
-        click.echo(derive_text(result) + (curves_text(result) if explain else ""), nl=False)
+        show_text(derive_text(result) + (curves_text(result) if explain else ""))
     write_new(output, settings, force, read)
     return finish(result, output, form)
 
@@ -200,7 +202,7 @@ def check(site: str, settings: Path, form: str, samples: int, seed: int, quiet: 
     if form == "json":
         show_json(study_dict(result, PROGRAM))
     else:
-        click.echo(check_text(result), nl=False)
+        show_text(check_text(result))
     return EXCEPTIONS if result.exceptions else DONE
 
 
@@ -256,7 +258,7 @@ def sheet(
     if form == "json":
         show_json(study_dict(result, PROGRAM))
     else:
-        click.echo(sheet_text(result), nl=False)
+        show_text(sheet_text(result))
     write_new(path, pages, force, read)
     return finish(result, path, form)
 
@@ -287,7 +289,7 @@ def reading(l_n: tuple[float, float, float], l_l: tuple[float, float, float] | N
     from relaycfg.study import read_meter
     from relaycfg.text import reading_text
 
-    click.echo(reading_text(read_meter(l_n, l_l, nominal)), nl=False)
+    show_text(reading_text(read_meter(l_n, l_l, nominal)))
     return DONE
 
 
@@ -297,38 +299,16 @@ def open_site(site: str, quiet: bool, need_relay: bool = True) -> tuple["Site", 
     Its warnings go to stderr, where the result does not print them.
     """
     from relaycfg.files import read_site
-    from relaycfg.files.text import decode
-    from relaycfg.files.text import read_bytes as bytes_of
 
     if site == "-":
-        text = standard_input()
-        found = read_site(None, text=text, need_relay=need_relay)
-        read = (STDIN, *named_files(text.removeprefix(BYTE_ORDER_MARK), Path()))
+        found = read_site(None, text=standard_input(), need_relay=need_relay)
+        read = (STDIN, *map(Path, found.files))
     else:
-        path = Path(site)
-        found = read_site(path, need_relay=need_relay)
-        read = (path, *named_files(decode(bytes_of(path, site, ""), site), path.parent))
+        found = read_site(Path(site), need_relay=need_relay)
+        read = tuple(map(Path, found.files))
     for warning in found.warnings:
         tell(quiet, f"warning: {warning}")
     return found, read
-
-
-def named_files(text: str, folder: Path) -> tuple[Path, ...]:
-    """The loads and device files that a site (a sound one) names."""
-    tables = tomllib.loads(text)
-    names = [tables.get("loads", {}).get("file"), *(relay.get("device") for relay in tables.get("relay", []))]
-    return tuple(folder / name.strip() for name in names if name)
-
-
-def standard_input() -> str:
-    """All of stdin, as far as there is one."""
-    try:
-        data = sys.stdin.buffer.read() if sys.stdin is not None else None
-    except OSError as reason:
-        raise click.UsageError(f"standard input cannot be read ({why(reason)}); give the path of a site") from None
-    if data is None:
-        raise click.UsageError("standard input is closed; give the path of a site")
-    return data.decode("utf-8", errors="surrogateescape")
 
 
 def known_place(site: "Site", given: str) -> str:
@@ -354,50 +334,6 @@ def finish(result: "Study", path: Path, form: str) -> int:
     """The path written, last: on stderr beside JSON, which stays whole on stdout."""
     show_written(str(path), err=form == "json")
     return EXCEPTIONS if result.exceptions else DONE
-
-
-def show_json(result: dict[str, Any]) -> None:
-    """One JSON document on stdout."""
-    click.echo(json.dumps(result, ensure_ascii=False, indent=1, allow_nan=False))
-
-
-def show_written(paths: str, err: bool = False) -> None:
-    """Paths that are written by now, which is said where they cannot be shown."""
-    try:
-        click.echo(paths, err=err)
-    except BrokenPipeError:
-        raise
-    except OSError as reason:
-        if not err:
-            named = paths.replace("\n", ", ")
-            raise click.ClickException(f"{NO_OUTPUT} ({why(reason)}); written all the same: {named}") from None
-
-
-def announce(quiet: bool, doing: str, samples: int, places: int, seconds: float) -> None:
-    """What is about to be computed, on stderr; ``seconds`` are those of one load state at one place, roughly."""
-    over = f" with {samples} drawn load states" if samples else ""
-    at = f" at {places} place{'s' if places != 1 else ''}"
-    long = "; this takes a while, fewer --samples are faster" if samples * places * seconds > PATIENCE_S else ""
-    tell(quiet, f"{doing}{over}{at}{long}")
-    if 0 < samples < FEW_SAMPLES:
-        tell(quiet, f"note: shares of {samples} load states mean little; take {FEW_SAMPLES} or more")
-
-
-def tell(quiet: bool, message: str) -> None:
-    """A message on stderr; nobody stops where it is not taken."""
-    if not quiet:
-        complain(f"relaycfg: {message}")
-
-
-def complain(message: str) -> None:
-    """A line on stderr."""
-    with contextlib.suppress(OSError):
-        click.echo(message, err=True)
-
-
-def why(reason: OSError) -> str:
-    """The system's reason in its own words."""
-    return (reason.strerror or "unknown reason").lower()
 
 
 def main(arguments: list[str] | None = None) -> NoReturn:

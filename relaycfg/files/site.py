@@ -4,6 +4,7 @@ import datetime
 import hashlib
 import json
 import sys
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -56,7 +57,14 @@ def read_site(path: Path | None, *, text: str | None = None, need_relay: bool = 
     site = _resolve(draft, loads, device, tables)
     if draft.problems:
         raise InputError(_ordered(draft.problems, shown))
-    return site
+    own = () if path is None else (str(path),)
+    return replace(site, files=(*own, *_named(draft)))
+
+
+def _named(draft: Draft) -> tuple[str, ...]:
+    """The loads and device files that the site names."""
+    loads = [draft.loads_file.file] if draft.loads_file is not None else []
+    return tuple(str(draft.folder / name) for name in (*loads, *(r.form.device for r in draft.relays)))
 
 
 def _ordered(problems: list[Problem], first_file: str) -> list[Problem]:

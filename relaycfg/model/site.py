@@ -275,6 +275,8 @@ class Site:
     warnings: tuple[str, ...]
     digest: str
     """sha256 of site, loads and device files and of the table rows used."""
+    files: tuple[str, ...] = ()
+    """Paths of the files it was read from: no result may be written over them."""
 
     def board(self, name: str) -> Board:
         """The board of that name (names are checked when the site is read)."""
