@@ -18,10 +18,12 @@ from relaycfg.relay.bands import (
 from relaycfg.relay.course import play
 from relaycfg.relay.machine import run
 from relaycfg.relay.quantities import Measured, measured_quantities, severities
+from relaycfg.relay.trip_tables import TripTable, trip_table
 
 __all__ = [
     "Band",
     "Measured",
+    "TripTable",
     "least_sensitive",
     "longest_delay",
     "measured_quantities",
@@ -37,5 +39,6 @@ __all__ = [
     "severities",
     "shortest_delay",
     "total_clearing",
+    "trip_table",
     "window_s",
 ]

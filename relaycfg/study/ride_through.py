@@ -9,11 +9,10 @@ from numpy.typing import NDArray
 from relaycfg.model.cases import Case, Course
 from relaycfg.model.device import Device, Element
 from relaycfg.model.geometry import FloatArray, Geometry
-from relaycfg.relay import measuring_s, severities
+from relaycfg.relay import measuring_s, severities, trip_table
 
 STANDING = -1
 NOTHING = -2
-GRAIN_S = 1e-9
 
 
 @dataclass(frozen=True)
@@ -120,31 +119,21 @@ def course_name(case: Case, course: Course) -> str:
 def run_lengths(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: float = 0.0) -> FloatArray:
     """How long each course keeps the timer running [courses, pickups], window and refresh included.
 
-    ``pickup`` and ``dropout`` [pickups] are severities already on their sensitive side. A falling excursion stays
-    in the window, so each run is that much longer and swallows shorter gaps; infinite where the standing severity
-    keeps it from dropping out. Same definition as the step-by-step machine (``relay.run``), which the tests hold it to.
+    ``pickup`` and ``dropout`` [pickups] are severities already on their sensitive side. Each course ends in the
+    standing severity for ever: infinite where that keeps it from dropping out.
     """
-    picked = np.zeros((len(runs.names), len(pickup), runs.severity.shape[-1]), bool)
-    shape = picked.shape[:2] if runs.shared or runs.every else picked.shape
-    count, gap, tail, longest = np.zeros(shape), np.zeros(shape), np.zeros(shape), np.zeros(shape)
-    for k in range(runs.severity.shape[1]):
-        here = runs.severity[:, k, None, :]
-        real = (runs.duration_s[:, k] > 0)[:, None, None]
-        now = np.where(picked, here >= dropout[None, :, None], here >= pickup[None, :, None])
-        picked = np.where(real, now, picked)
-        seconds = runs.duration_s[:, k].reshape((-1,) + (1,) * (len(shape) - 1))
-        timing = picked.all(axis=-1) if runs.every else picked.any(axis=-1) if runs.shared else picked
-        counted = np.where(timing, seconds, np.minimum(tail, seconds))
-        reached = count + counted
-        longest = np.maximum(longest, reached)
-        gap = np.where(timing, 0.0, gap + seconds - counted)
-        count = np.where(gap > hold_s + GRAIN_S, 0.0, reached)
-        tail = np.where(timing & (seconds > 0), runs.lag_s, tail - counted)
-    ends_up = picked & (runs.standing >= dropout)[None, :, None]
-    endless = ends_up.all(axis=-1) if runs.every else ends_up.any(axis=-1)
-    longest = np.maximum(longest, np.where(count > 0, count + tail, 0.0))
-    each = longest if runs.shared or runs.every else longest.max(axis=-1)
-    return np.where(endless, np.inf, each)
+    courses, _, channels = runs.severity.shape
+    return trip_table(
+        np.append(runs.severity, np.full((courses, 1, channels), runs.standing), axis=1),
+        np.append(runs.duration_s, np.full((courses, 1), np.inf), axis=1),
+        pickup,
+        dropout,
+        "held",
+        hold_s,
+        "shared" if runs.shared else "per phase",
+        "all" if runs.every else "any",
+        runs.lag_s,
+    ).longest_s.T
 
 
 def ride_through(runs: Runs, pickup: FloatArray, dropout: FloatArray, hold_s: float = 0.0) -> RideThrough:

@@ -12,12 +12,12 @@ import numpy as np
 
 from relaycfg import __version__
 from relaycfg.files import read_site, templates_dir
+from relaycfg.model.geometry import FloatArray
 from relaycfg.model.site import Site
-from relaycfg.relay import run
+from relaycfg.relay import run, trip_table
 from relaycfg.sheet import render
 from relaycfg.study import derive, evidence, study
 from relaycfg.study.ladder import Ladder
-from relaycfg.study.ride_through import Runs, ride_through
 from tests.benchmarks.report import REPEATS, Row, ratios, seconds
 
 EXAMPLE = Path(__file__).resolve().parents[2] / "examples" / "workshop" / "site.toml"
@@ -29,7 +29,7 @@ BEFORE_S = 9.0
 def measure() -> Iterator[Row]:
     """All rows of the study."""
     yield from all_settings()
-    yield from many_courses()
+    yield from tables()
     yield from by_phase()
     yield from by_boards()
 
@@ -54,7 +54,7 @@ def step(ladder: Ladder, rung: int, delay: int) -> bool:
         ladder.reset,
         ladder.hold_s,
         "shared" if runs.shared else "per phase",
-        lag_s=runs.window_s,
+        lag_s=runs.lag_s,
     )
     return bool(np.isinf(trip_s).all())
 
@@ -93,16 +93,69 @@ def _finer(ladder: Ladder) -> Ladder:
     return replace(ladder, element=replace(element, delay_s=replace(element.delay_s, step=element.delay_s.step / 10)))
 
 
-def many_courses() -> Iterator[Row]:
-    """Ride-through where the courses are many and drawn: 50 pickups against one comparison with one level."""
-    rng, count, pieces = np.random.default_rng(2), 2000, 30
-    severity = rng.uniform(200, 300, (count, pieces, 3))
-    lasting = rng.uniform(0, 2, (count, pieces))
-    names = tuple(map(str, range(count)))
-    runs = Runs(severity, lasting, names, tuple(range(count)), dict(enumerate(names)), 205.0, "standing", 0.02, False)
-    pickups = np.linspace(210, 310, 50)
-    took = ratios(lambda: ride_through(replace(runs), pickups, 0.97 * pickups), lambda: severity >= 265.0)
-    yield Row(f"ride-through of 50 pickups / one bare compare, {count} courses of {pieces} pieces", took, "{:.0f}", 80)
+SIGNALS, EVENTS, STEPS, STEP_S = 8, 10_000, 3000, 0.01
+CHUNK = 1000
+"""Events handled at once."""
+STEPPED = 10
+
+
+def excursions(rng: np.random.Generator, noise_v: float) -> FloatArray:
+    """One signal [events, steps]: 230 V with three swells an event, up to 80 V and 3 s, on top of one another."""
+    volts = np.full((EVENTS, STEPS), 230, np.float32)
+    if noise_v:
+        volts += rng.normal(0, noise_v, volts.shape).astype(np.float32)
+    for _ in range(3):
+        begin, lasting = rng.integers(0, STEPS, EVENTS), rng.integers(5, 300, EVENTS)
+        height = rng.uniform(0, 80, EVENTS)
+        for event in range(EVENTS):
+            volts[event, begin[event] : begin[event] + lasting[event]] += height[event]
+    return volts
+
+
+def tables() -> Iterator[Row]:
+    """All settings on all events: 8 signals, 50 levels x 37 delays each, 2000 settings of one stage a signal."""
+    pickup, delay_s = np.linspace(240, 320, 50), 0.055 + 0.1 * np.arange(37)
+    clock = np.full((1, STEPS), STEP_S)
+    rng = np.random.default_rng(3)
+    for noise_v in (0.0, 1.0):
+        signals = [excursions(rng, noise_v) for _ in range(SIGNALS)]
+
+        def all_entries(count: int, signals=signals) -> list[FloatArray]:
+            stages = np.random.default_rng(4).integers((SIGNALS * [[50, 37]]), size=(count, SIGNALS, 2))
+            first = []
+            for k in range(0, EVENTS, CHUNK):
+                every = [
+                    trip_table(x[k : k + CHUNK, :, None], clock, pickup, 0.97 * pickup).instants(delay_s)
+                    for x in signals
+                ]
+                trips = np.full((count, min(CHUNK, EVENTS - k)), np.inf)
+                for entries, stage in zip(every, np.moveaxis(stages, 1, 0), strict=True):
+                    np.minimum(trips, entries[stage[:, 0], stage[:, 1]], out=trips)
+                first.append(trips)
+            return first
+
+        label = f"trip tables, {EVENTS} events x {STEPS} steps x {SIGNALS} signals, noise {noise_v:g} V"
+        bare = [seconds(lambda signals=signals: [x >= 265.0 for x in signals]) for _ in range(REPEATS)]
+        made, few, many = (
+            [seconds(lambda count=count: all_entries(count)) for _ in range(3)] for count in (1, 200, 2000)
+        )
+        yield Row(f"{label}: all entries / one bare compare", [t / min(bare) for t in made], "{:.0f}", 80)
+        yield Row("  the same with 2000 settings", [t / min(bare) for t in many], "{:.0f}")
+        yield Row("  2000 settings / 200 settings", [m / f for f, m in zip(few, many, strict=True)], "{:.2f}", 2.5)
+        part = signals[0][:STEPPED, :, None].astype(float)
+        lasting = np.full((STEPPED, STEPS), STEP_S)
+        table = trip_table(part, lasting, pickup, 0.97 * pickup).instants(delay_s)
+        tried = [(p, d) for p in range(0, 50, 7) for d in range(0, 37, 9)]
+        start = time.perf_counter()
+        slow = np.array([run(part, lasting, pickup[p], 0.97 * pickup[p], delay_s[d]) for p, d in tried])
+        each = (time.perf_counter() - start) / len(tried)
+        stepped = each * EVENTS / STEPPED * len(pickup) * len(delay_s) * SIGNALS
+        yield Row(
+            "  stepping every setting (extrapolated) / all entries", [stepped / t for t in made], "{:.0f}", least=300
+        )
+        found = np.array([table[p, d] for p, d in tried])
+        same = (np.isfinite(found) == np.isfinite(slow)) & ~(np.abs(found - slow) > 1e-9)
+        yield Row(f"  mismatches in {slow.size} entries stepped", [float((~same).sum())], "{:.0f}", 0, worst=True)
 
 
 class Clock:
