@@ -8,9 +8,5 @@ ZIP_SUM_NEAR = 0.02
 """Printed shares are rounded to two decimals each; more than that is a slip."""
 BAND_HIGHEST_PU = 3.0
 """No line-to-neutral voltage exceeds this; beyond it a load law says nothing."""
-LEVEL_SPAN = (0.85, 1.15)
-"""EMF over nominal within which given volts count as a moved neutral and not as a dip."""
-ANGLES_MATTER_PU = 0.01
-"""Spread of magnitudes from which on missing angles deserve a warning: a device's usual error."""
 CONNECTED_TIMES = 3.0
 """Connected load over the source's rating from which on a slip is likely: diversity seldom explains more."""

@@ -7,9 +7,6 @@ from relaycfg.files.site_form import BoardForm, CableForm
 from relaycfg.files.tables import Tables
 from relaycfg.model.site import Board, Cable
 
-REFERENCE_C = 20.0
-REFERENCE_HZ = 50.0
-
 
 def resolve_board(form: BoardForm, frequency_hz: float, ledger: Ledger) -> Board:
     """A board with the ohms of its cable."""
@@ -43,7 +40,7 @@ def resistance_20(section_mm2: float, metal: str, tables: Tables) -> tuple[float
 def warm(resistance: float, metal: str, temperature_c: float, tables: Tables) -> float:
     """Resistance at a temperature from that at 20 C. Source: linear law; coefficients as in the tables."""
     row = tables.row("temperature-coefficient-cu" if metal == "Cu" else "temperature-coefficient-al-textbook")
-    return float(resistance * (1 + row.value * (temperature_c - REFERENCE_C)))
+    return float(resistance * (1 + row.value * (temperature_c - row.content["from_c"])))
 
 
 def _by_section(cable: CableForm, frequency_hz: float, at: str, ledger: Ledger) -> Cable:
@@ -58,7 +55,7 @@ def _by_section(cable: CableForm, frequency_hz: float, at: str, ledger: Ledger) 
     reactance = cable.reactance_ohm_per_km
     if reactance is None:
         row = tables.row("reactance-multicore")
-        reactance = row.value * frequency_hz / REFERENCE_HZ
+        reactance = row.value * frequency_hz / row.content["at_hz"]
         ledger.default(at + "reactance_ohm_per_km", reactance, "ohm/km", row.source, row.status)
     else:
         ledger.given(at + "reactance_ohm_per_km", reactance, "ohm/km")

@@ -5,7 +5,6 @@ import math
 
 from relaycfg.files.draft import Draft
 from relaycfg.files.ledger import Ledger, printed
-from relaycfg.files.limits import ANGLES_MATTER_PU, LEVEL_SPAN
 from relaycfg.files.relay_form import CaseForm, MustHoldForm, SegmentForm
 from relaycfg.files.tables import Row, Tables, is_50_hz
 from relaycfg.model.geometry import Geometry
@@ -88,7 +87,10 @@ def resolve_reference(form: MustHoldForm, supply: Supply, ledger: Ledger) -> Ref
     interruption = ledger.pick("must_hold.interruption_s", form.interruption_s, "default-interruption", "s")
     row = tables.row("default-interruption")
     source, status = (row.source, row.status) if form.interruption_s is None else ("site", "user")
-    return ReferenceCases(tuple(dips.values()), swells, float(interruption), source, status)
+    pole = tables.row("own-pole-spread")
+    return ReferenceCases(
+        tuple(dips.values()), swells, float(interruption), source, status, float(pole.value), pole.source, pole.status
+    )
 
 
 def reference_swells(tables: Tables, nominal_v: float) -> tuple[tuple[float, float, str, str], ...]:
@@ -115,19 +117,23 @@ def resolve_case(form: CaseForm, supply: Supply, ledger: Ledger, warnings: list[
     """A user's case with phasors; magnitudes stay as given."""
     course = "; ".join(f"{printed(s.l_n_v)} V {s.duration_s:g} s" for s in form.segment)
     ledger.given(f"case.{form.name}", form.expect, "", f"{course}; {form.source}")
-    segments = tuple(UserSegment(s.duration_s, _phasors(s, supply, form.name, warnings)) for s in form.segment)
+    segments = tuple(
+        UserSegment(s.duration_s, _phasors(s, supply, form.name, ledger.tables, warnings)) for s in form.segment
+    )
     return UserCase(form.name, form.expect, form.source, segments)
 
 
-def _phasors(segment: SegmentForm, supply: Supply, name: str, warnings: list[str]) -> tuple[complex, ...]:
+def _phasors(
+    segment: SegmentForm, supply: Supply, name: str, tables: Tables, warnings: list[str]
+) -> tuple[complex, ...]:
     if segment.angle_deg is not None:
         angles = [math.radians(a) for a in segment.angle_deg]
         return tuple(cmath.rect(v, a) for v, a in zip(segment.l_n_v, angles, strict=True))
     moved = moved_neutral(segment.l_n_v, supply.geometry)
-    span = [limit * supply.nominal_v for limit in LEVEL_SPAN]
+    span = [limit * supply.nominal_v for limit in tables.row("own-case-level-range").value]
     if moved is not None and span[0] <= moved[0] <= span[1]:
         return moved[1]
-    if max(segment.l_n_v) - min(segment.l_n_v) > ANGLES_MATTER_PU * supply.nominal_v:
+    if max(segment.l_n_v) - min(segment.l_n_v) > tables.row("own-case-uneven").value / 100 * supply.nominal_v:
         warnings.append(
             f"Case {name}: {', '.join(f'{v:g}' for v in segment.l_n_v)} V do not fit a moved neutral behind sound "
             "line-to-line volts; the angles of the source are taken. Give angle_deg."

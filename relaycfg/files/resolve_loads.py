@@ -33,8 +33,10 @@ class LoadResolver:
     def __init__(self, supply: Supply, ledger: Ledger, loads: list[PlacedLoad]) -> None:
         self.supply, self.ledger = supply, ledger
         self.omitted: dict[str, list[str]] = {}
+        self.kinds: dict[str, Row] = {}
         self.group_usage = {p.form.group: p.form.usage for p in loads if p.form.group and p.form.usage is not None}
         self.loads = tuple(self._load(placed) for placed in loads)
+        self._enter_kinds()
         self._enter_defaults()
 
     def _default(self, key: str, name: str, row_id: str) -> float:
@@ -82,7 +84,10 @@ class LoadResolver:
             return None
         tables = self.ledger.tables
         if form.kind is not None:
-            return tables.named("load-kinds", form.kind)
+            row = tables.named("load-kinds", form.kind)
+            assert row is not None
+            self.kinds[row.id] = row
+            return row
         self.omitted.setdefault("kind default-load-kind", []).append(name)
         return tables.named("load-kinds", tables.row("default-load-kind").value)
 
@@ -117,6 +122,12 @@ class LoadResolver:
             zip_q, band = form.zip_q or zip_p, tables.row("default-load-band").value
         band = form.band_pu or band
         return _to_one(zip_p), _to_one(form.zip_q or zip_q), (float(band[0]), float(band[1]))
+
+    def _enter_kinds(self) -> None:
+        """What stands behind each kind that a load names: its coefficients have a source, the name has none."""
+        for row in self.kinds.values():
+            value = printed(_to_one(row.values["zip_p"]))
+            self.ledger.given(f"load.*.zip_p of {row.name}", value, "", row.source, status=row.status)
 
     def _enter_defaults(self) -> None:
         for key_row, owners in self.omitted.items():

@@ -31,6 +31,7 @@ def resolve_relay(form: RelayForm, device: DeviceForm, supply: Supply, ledger: L
         coil_and_breaker_s=ledger.pick(
             at + "coil_and_breaker_s", form.coil_and_breaker_s, "default-relay-breaker", "s"
         ),
+        dead_bus_pu=ledger.tables.row("own-dead-bus").value,
     )
 
 
@@ -75,7 +76,8 @@ def resolve_equipment(form: EquipmentForm, nominal_v: float, ledger: Ledger, war
     if form.sustained_high_s is not None:
         ledger.given(at + "sustained_high_s", form.sustained_high_s, "s")
     else:
-        ledger.default(at + "sustained_high_s", high[0][1], "s", "taken as that of the first point", "own")
+        known = "own" if status == "user" else status
+        ledger.default(at + "sustained_high_s", high[0][1], "s", "taken as that of the first point", known)
     low: Steps = tuple((v, s) for v, s in form.points_low or ())
     if low:
         ledger.given(at + "points_low", form.points_low, "V, s")

@@ -73,9 +73,9 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
     emf = form.no_load_v if form.no_load_v is not None else supply.nominal_v
     solve = {"transformer": _transformer, "generator": _generator, "impedance": _plain}[form.kind]
     line, neutral = solve(form, emf, supply.geometry, at, ledger)
-    steps = (0.0, 0.0, 0.0, "", "")
+    steps, recovered = (0.0, 0.0, 0.0, "", ""), 0.0
     if form.kind == "generator":
-        steps = _steps(form, at, ledger)
+        steps, recovered = _steps(form, at, ledger), float(ledger.tables.row("own-generator-recovered").value)
     return Source(
         name=form.name,
         kind=form.kind,
@@ -88,6 +88,7 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
         step_dip_percent=steps[0],
         step_rise_percent=steps[1],
         step_recovery_s=steps[2],
+        step_recovered_percent=recovered,
         step_source=steps[3],
         step_status=steps[4],
     )

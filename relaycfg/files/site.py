@@ -18,6 +18,7 @@ from relaycfg.files.limits import CONNECTED_TIMES
 from relaycfg.files.relay_form import EquipmentForm, MustHoldForm
 from relaycfg.files.resolve_boards import resolve_board
 from relaycfg.files.resolve_cases import resolve_case, resolve_faults, resolve_reference
+from relaycfg.files.resolve_judgement import resolve_judgement
 from relaycfg.files.resolve_loads import LoadResolver, resolve_motors
 from relaycfg.files.resolve_relay import resolve_equipment, resolve_relay
 from relaycfg.files.resolve_supply import resolve_source, resolve_supply
@@ -111,6 +112,7 @@ def _resolve(draft: Draft, loads: list[PlacedLoad], device: tuple[TomlFile, Devi
         user_cases=cases,
         inputs=tuple(inputs),
         warnings=tuple(warnings),
+        judgement=resolve_judgement(tables),
         digest=_digest(draft, loads, device[0] if device else None, tables),
     )
 

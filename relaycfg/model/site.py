@@ -1,10 +1,11 @@
 """A resolved site: SI units, defaults filled in, names checked. Made by ``files``, read by everything else."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Literal
 
 from relaycfg.model.device import Device
 from relaycfg.model.geometry import Geometry
+from relaycfg.model.judgement import Judgement
 
 Tag = Literal["measured", "nameplate", "letter", "assumed", "default"]
 SOURCE = "source"
@@ -90,6 +91,8 @@ class Source:
     """Generator: first dip on a load step (negative) and rise on load off, with recovery; zero elsewhere."""
     step_rise_percent: float = 0.0
     step_recovery_s: float = 0.0
+    step_recovered_percent: float = 0.0
+    """Deviation from nominal at which it counts as recovered."""
     step_source: str = ""
     step_status: str = ""
 
@@ -203,6 +206,8 @@ class Relay:
     trip_coil: Feed
     output_s: float
     coil_and_breaker_s: float
+    dead_bus_pu: float = 0.0
+    """Share of nominal below which all line-to-neutral volts together count as a dead system; 0: it never does."""
 
 
 @dataclass(frozen=True)
@@ -254,6 +259,10 @@ class ReferenceCases:
     interruption_s: float
     interruption_source: str
     interruption_status: str
+    pole_late_s: float = 0.0
+    """Spread of a switch's poles on closing."""
+    pole_late_source: str = ""
+    pole_late_status: str = ""
 
 
 @dataclass(frozen=True)
@@ -277,6 +286,7 @@ class Site:
     """sha256 of site, loads and device files and of the table rows used."""
     files: tuple[str, ...] = ()
     """Paths of the files it was read from: no result may be written over them."""
+    judgement: Judgement = field(default_factory=Judgement)
 
     def board(self, name: str) -> Board:
         """The board of that name (names are checked when the site is read)."""

@@ -12,8 +12,6 @@ from relaycfg.relay.bands import least_sensitive, measuring_s, most_sensitive
 from relaycfg.relay.machine import run
 from relaycfg.relay.quantities import severities
 
-DEAD_SHARE = 0.2
-"""Share of nominal below which all line-to-neutral volts together count as a dead system (own choice)."""
 BLOCKABLE = (Function.UNDERVOLTAGE, Function.UNBALANCE)
 """Elements that start-up inhibit and dead-bus block act on: never overvoltage or displacement."""
 
@@ -38,7 +36,7 @@ def play(
     A stage whose element the device lacks does not operate.
     """
     measuring = measuring_s(device, frequency_hz)
-    tap, lengths, blocked = _with_blocking(course_tap, duration_s, DEAD_SHARE * nominal_v, settings.inhibit_s)
+    tap, lengths, blocked = _with_blocking(course_tap, duration_s, relay.dead_bus_pu * nominal_v, settings.inhibit_s)
     instants: dict[str, float] = {}
     for stage in settings.active:
         element = device.element(stage.function)

@@ -8,7 +8,7 @@ from relaycfg.network import LoadStates, Network, connected, corners, join, leas
 from relaycfg.study.break_rows import break_rows
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.levels import NOMINAL, supply_levels
-from relaycfg.study.place_summary import BALANCED_PU, summarise, why_not_seen
+from relaycfg.study.place_summary import summarise, why_not_seen
 from relaycfg.study.scenarios import Scenarios
 from relaycfg.study.stages import ActiveStage
 
@@ -87,7 +87,7 @@ def _nominal_pairs(evidence: Evidence) -> dict[str, tuple[Scenarios, Scenarios]]
 
 def _notes(site: Site, rows: tuple[BreakRow, ...]) -> tuple[str, ...]:
     """Breaks that move nothing: balanced load is invisible to every voltage element."""
-    limit = BALANCED_PU * site.supply.nominal_v
+    limit = site.judgement.balanced_pu * site.supply.nominal_v
     notes = []
     for row in rows:
         board = row.boards.get(row.at)

@@ -12,10 +12,6 @@ from relaycfg.study.levels import Healthy, Levels
 from relaycfg.study.standing import FOR_EVER, HIGHEST_DISPLACEMENT, standing_cases
 from relaycfg.study.third_harmonic import ThirdHarmonic, third_harmonic, with_harmonic
 
-POLE_LATE_S = 0.02
-"""Spread of a switch's poles on closing (own choice, a cycle)."""
-RECOVERED_PU = 0.03
-"""Deviation at which a generating set counts as recovered (own choice)."""
 RECOVERY_STEPS = 24
 FAULT_KINDS: tuple[FaultKind, ...] = ("L-N", "L-PE", "L-L", "three-phase")
 STIFF_OHM = 0.001 + 0j
@@ -179,7 +175,7 @@ def _generator_steps(site: Site) -> list[Case]:
     cases = []
     for name, percent in (("on", source.step_dip_percent), ("off", source.step_rise_percent)):
         start = percent / 100
-        constant_s = source.step_recovery_s / np.log(max(abs(start) / RECOVERED_PU, np.e))
+        constant_s = source.step_recovery_s / np.log(max(abs(percent) / source.step_recovered_percent, np.e))
         edges = np.linspace(0, source.step_recovery_s, RECOVERY_STEPS + 1)
         segments = tuple(
             Segment(float(edges[k + 1] - edges[k]), sound_tap(site, 1 + start * float(np.exp(-edges[k] / constant_s))))
@@ -195,7 +191,7 @@ def _generator_steps(site: Site) -> list[Case]:
                 source.step_status,
                 False,
                 (Course("all lines", segments),),
-                f"{peak:.1f} V, recovered to {100 * RECOVERED_PU:g} % in {source.step_recovery_s:.3g} s",
+                f"{peak:.1f} V, recovered to {source.step_recovered_percent:g} % in {source.step_recovery_s:.3g} s",
             )
         )
     return cases
@@ -204,15 +200,16 @@ def _generator_steps(site: Site) -> list[Case]:
 def _energising(site: Site) -> Case:
     late = site.supply.nominal_v * site.supply.geometry.phasors
     late[0] = 0
+    reference = site.reference
     return Case(
         0,
         "Energising, one pole late",
         "hold",
-        "common practice, no source",
-        "own",
+        reference.pole_late_source,
+        reference.pole_late_status,
         False,
-        (_single("one pole late", late, POLE_LATE_S),),
-        f"0 / U / U for {POLE_LATE_S:.3g} s, then all lines",
+        (_single("one pole late", late, reference.pole_late_s),),
+        f"0 / U / U for {reference.pole_late_s:.3g} s, then all lines",
     )
 
 

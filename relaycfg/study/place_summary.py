@@ -16,7 +16,6 @@ from relaycfg.study.stages import ActiveStage, operating_s
 HARMS: tuple[Harm, ...] = ("none", "high volts", "low volts", "both")
 OPERATIONS: tuple[Operation, ...] = ("in time", "late", "none")
 WORST_SHOWN = 3
-BALANCED_PU = 0.01
 STILL_V = 0.001
 
 

@@ -9,12 +9,12 @@ from relaycfg.relay import measuring_s, severities
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.stages import ActiveStage
 
-BEYOND = 1.1
-"""Timing is tested with the quantity 10 percent beyond the pickup, and at least twice its error."""
-
 
 def test_schedule(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> tuple[TestPoint, ...]:
-    """Two points a stage and line: the pickup, then the time; accept bands from the declared errors."""
+    """Two points a stage and line: the pickup, then the time; accept bands from the declared errors.
+
+    Timing is tested with the quantity beyond the pickup by the site's yardstick, and at least by twice its error.
+    """
     return tuple(
         point
         for active in stages
@@ -52,11 +52,12 @@ def _time_point(evidence: Evidence, active: ActiveStage, stages: tuple[ActiveSta
     frequency = evidence.site.supply.frequency_hz
     measuring = measuring_s(device, frequency) + evidence.relay.output_s
     timing = float(active.ladder.element.accuracy.time_error(stage.delay_s))
+    beyond = evidence.site.judgement.test_beyond
     sure = 2 * float(active.ladder.element.accuracy.pickup_error(stage.pickup))
     if stage.function is Function.UNDERVOLTAGE:
-        level = max(0.0, min(stage.pickup / BEYOND, stage.pickup - sure))
+        level = max(0.0, min(stage.pickup / beyond, stage.pickup - sure))
     else:
-        level = max(stage.pickup * BEYOND, stage.pickup + sure)
+        level = max(stage.pickup * beyond, stage.pickup + sure)
     return TestPoint(
         stage.label,
         line,

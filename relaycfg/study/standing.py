@@ -27,19 +27,21 @@ def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
     low = int(np.argmin(np.abs(lower).min(axis=-1)))
     free = int(np.argmax(np.abs(_l_n(healthy.no_load)).max(axis=-1)))
     least, most = float(np.abs(lower[low]).min()), float(np.abs(upper[high]).max())
-    band = f"{supply.band_name}: {supply.band_source}"
+    band, known = f"{supply.band_name}: {supply.band_source}", _known(supply.band_status)
     return [
         _standing(
             "Supply at its upper limit",
             band,
             (_course(f"state {healthy.names[high]}", healthy.upper[high]),),
             f"{_volts(upper[high])} at {board}, {supply.high_v:.1f} V promised at {supply.band_at}",
+            known,
         ),
         _standing(
             "Supply at its lower limit",
             band,
             (_course(f"state {healthy.names[low]}", healthy.lower[low]),),
             f"{_volts(lower[low])} at {board}, {supply.low_v:.1f} V promised at {supply.band_at}",
+            known,
         ),
         _standing(
             "Source at its no-load volts",
@@ -127,8 +129,13 @@ def _within(tap: ComplexArray, least_v: float, most_v: float) -> ComplexArray:
     return np.append(v0 + low * (lines - v0), tap[-1])
 
 
-def _standing(name: str, source: str, courses: tuple[Course, ...], figures: str) -> Case:
-    return Case(0, name, "hold", source, "computed", True, courses, figures)
+def _known(status: str) -> str:
+    """Volts at the board are computed; from a limit that is only remembered they are no better than it."""
+    return "memory" if status == "memory" else "computed"
+
+
+def _standing(name: str, source: str, courses: tuple[Course, ...], figures: str, status: str = "computed") -> Case:
+    return Case(0, name, "hold", source, status, True, courses, figures)
 
 
 def _course(label: str, tap: ComplexArray) -> Course:

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from relaycfg.files.tables import STATUSES, TableError, Tables, is_high_curve, load_rows, names, shipped
+from relaycfg.files.tables import STATUSES, TableError, Tables, load_rows, names, shipped
 
 FILES = Path(__file__).parents[2]
 
@@ -37,20 +37,6 @@ def written_in_code():
             for node in ast.walk(tree)
             if isinstance(node, ast.Constant) and isinstance(node.value, str) and id(node) not in docs
         )
-
-
-def test_every_row_is_used_by_its_id_or_can_be_named_by_a_user():
-    texts = set(written_in_code())
-    stems = {t for t in texts if t.endswith("-")}  # such as disconnection-{system}
-    pointed = {row.content.get("value") for row in shipped().values() if isinstance(row.content.get("value"), str)}
-    selectable = {*names("supply-bands"), *names("load-kinds"), *names("withstand-curves", is_high_curve)}
-    selectable |= {f"generating set class {c}" for c in ("G1", "G2", "G3")}
-    metals = {f"{stem}{metal}" for stem in stems for metal in ("cu", "al")}
-    systems = {f"disconnection-{system}{above}" for system in ("tn", "tt") for above in ("", "-above-400")}
-    directions = {f"default-device-dropout-{side}" for side in ("over", "under")}
-    known = texts | metals | systems | directions | pointed
-    unused = [i for i, row in shipped().items() if i not in known and row.content.get("name") not in selectable]
-    assert unused == []
 
 
 def test_every_value_of_a_row_is_read_somewhere():

@@ -27,7 +27,7 @@ def played(device, geometry):
         )
         settings = Settings("R1", device.name, "", stages, inhibit_s, "by hand")
         feed = Feed("auxiliary", 19, 29)
-        relay = Relay("R1", "MB", "MB", "lines", of, feed, "shunt", feed, 0.01, 0.05)
+        relay = Relay("R1", "MB", "MB", "lines", of, feed, "shunt", feed, 0.01, 0.05, dead_bus_pu=0.2)
         return play(np.array(taps), np.array(lengths), of, settings, 50.0, relay, side, geometry, 230.0)
 
     return with_stages
