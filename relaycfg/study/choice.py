@@ -11,13 +11,8 @@ from relaycfg.model.geometry import BoolArray, FloatArray
 from relaycfg.study.ladder import UNIT_TIME, Ladder
 from relaycfg.study.scenarios import Scenarios
 
-MARGIN_CAP_UNITS = 2.0
-"""A public supply shows a knee here: beyond it cover falls and nothing is gained (own choice)."""
-MARGINS = tuple(float(units) for units in np.arange(MARGIN_CAP_UNITS, -0.25, -0.25))
-KEPT_TIME = (1.0, 0.5, 0.0)
-"""Units of time kept towards the deadlines of the needed core, tried in this order (own choice)."""
-COVER_KEPT = 0.98
-"""Share of an element's greatest cover that is kept while stages are saved and margins raised (own choice)."""
+MARGIN_STEP_UNITS = 0.25
+"""Security margins are tried from the cap down in this step."""
 
 
 @dataclass(frozen=True)
@@ -64,8 +59,8 @@ def choose(ladder: Ladder, own: Demand, need: Demand, stages: int) -> tuple[Rung
     """At most ``stages`` stages in order of rising severity; empty where nothing is covered.
 
     ``own`` counts all states to be cleared (redundancy), ``need`` those of the core that depend on this element. In
-    order: all of ``need`` that any secure stages can cover, at least 98 percent of the
-    greatest cover of ``own``, fewest stages, security margin (to the cap), speed, low pickup.
+    order: all of ``need`` that any secure stages can cover, the share to be kept (98 percent) of the greatest cover
+    of ``own``, fewest stages, security margin (to the cap), speed, low pickup.
     """
     goal = _score(ladder, own, need, best_cover(ladder, own, need, stages))
     if goal[1] == 0:
@@ -73,11 +68,11 @@ def choose(ladder: Ladder, own: Demand, need: Demand, stages: int) -> tuple[Rung
     fewest = next(
         count
         for count in range(1, stages + 1)
-        if _reaches(_score(ladder, own, need, best_cover(ladder, own, need, count)), goal)
+        if _reaches(ladder, _score(ladder, own, need, best_cover(ladder, own, need, count)), goal)
     )
-    for units in MARGINS:
+    for units in _margins(ladder):
         rungs = best_cover(ladder, own, need, fewest, units)
-        if _reaches(_score(ladder, own, need, rungs), goal):
+        if _reaches(ladder, _score(ladder, own, need, rungs), goal):
             break
     return raise_margins(ladder, own, need, rungs, goal)
 
@@ -114,7 +109,7 @@ def raise_margins(
 ) -> tuple[Rung, ...]:
     """Each stage in turn at the greatest security margin (to the cap) that still reaches the goal.
 
-    The goal is all of the needed core and 98 percent of the cover that the stages have now, or as given. Among the
+    The goal is all of the needed core and the kept share of the cover that the stages have now, or as given. Among the
     rungs that do, the fastest, then the lowest pickup.
     """
     target = goal if goal is not None else _score(ladder, own, need, rungs)
@@ -129,7 +124,7 @@ def detection_rung(ladder: Ladder, floor: float) -> Rung | None:
 
     None where none is secure. ``floor`` is a severity that may stand without being among the cases.
     """
-    for units in MARGINS:
+    for units in _margins(ladder):
         fastest = ladder.fastest(units)
         rung = _first((fastest < len(ladder.delays)) & (ladder.sensitive > floor))
         if rung < len(fastest):
@@ -163,8 +158,14 @@ def _cover(wanted: Demand, stages: list[tuple[int, float]]) -> int:
     return total
 
 
-def _reaches(score: tuple[int, int], goal: tuple[int, int]) -> bool:
-    return score[0] >= goal[0] and score[1] >= COVER_KEPT * goal[1]
+def _reaches(ladder: Ladder, score: tuple[int, int], goal: tuple[int, int]) -> bool:
+    return score[0] >= goal[0] and score[1] >= ladder.judgement.cover_kept * goal[1]
+
+
+def _margins(ladder: Ladder) -> list[float]:
+    """Security margins to try, from the cap down to none."""
+    steps = round(ladder.judgement.margin_cap_units / MARGIN_STEP_UNITS)
+    return [k * MARGIN_STEP_UNITS for k in range(steps, -1, -1)]
 
 
 def _with_margin(
@@ -175,15 +176,16 @@ def _with_margin(
     A security margin bought with all of the time left would leave a core state one step from being missed.
     """
     others = [(r.pickup, float(ladder.clearing[r.delay])) for k, r in enumerate(rungs) if k != position]
-    for kept_units in KEPT_TIME:
+    for share in (1.0, 0.5, 0.0):
+        kept_units = share * ladder.judgement.deadline_kept_units
         hard = replace(need, deadlines=need.deadlines / UNIT_TIME**kept_units)
-        for units in MARGINS:
+        for units in _margins(ladder):
             if units < max(kept_units, rungs[position].margin_units):
                 break
             fastest = ladder.fastest(units)
             clearing = ladder.clearing[fastest]
             kept = (_cover_of_each(hard, others, clearing) >= goal[0]) & (fastest < len(ladder.delays))
-            kept &= _cover_of_each(own, others, clearing) >= COVER_KEPT * goal[1]
+            kept &= _cover_of_each(own, others, clearing) >= ladder.judgement.cover_kept * goal[1]
             if kept.any():
                 quickest = int(fastest[kept].min())
                 return Rung(_first(kept & (fastest == quickest)), quickest, units)

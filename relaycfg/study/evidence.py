@@ -53,4 +53,5 @@ def _ladder(site: Site, relay: Relay, cases: tuple[Case, ...], element: Element)
         supply.nominal_v,
         supply.geometry.line_to_line_ratio,
         runs_of(cases, element, relay.device, supply.geometry, supply.frequency_hz),
+        site.judgement,
     )

@@ -1,6 +1,6 @@
 """The settable pickups and delays of one element, with the fastest secure delay of each pickup."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 
 from relaycfg.model.device import Element, Function, Reset
 from relaycfg.model.geometry import FloatArray
+from relaycfg.model.judgement import Judgement
 from relaycfg.model.site import Relay
 from relaycfg.relay import pickups_least_sensitive, pickups_most_sensitive, shortest_delay, total_clearing
 from relaycfg.study.ride_through import RideThrough, Runs, ride_through
@@ -26,6 +27,7 @@ class Ladder:
     nominal_v: float
     line_to_line_ratio: float
     runs: Runs
+    judgement: Judgement = field(default_factory=Judgement)
 
     @cached_property
     def pickups(self) -> FloatArray:

@@ -8,8 +8,6 @@ from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray
 from relaycfg.model.settings import Settings, Stage
 from relaycfg.study.choice import (
-    COVER_KEPT,
-    MARGIN_CAP_UNITS,
     ORDER,
     Rung,
     best_cover,
@@ -23,8 +21,6 @@ from relaycfg.study.choice import (
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.joint import joint_core
 from relaycfg.study.ladder import Ladder
-
-INHIBIT_S = 0.5
 
 
 @dataclass(frozen=True)
@@ -41,7 +37,7 @@ def settle(evidence: Evidence) -> Settled:
     First the greatest core that 59, 27 and 59N can clear together; then each is chosen for all states it can reach
     (redundancy), keeping the core that depends on it; then each stage's margin is raised as far as that allows. A 59N
     stage left over becomes the detection stage. 47 is chosen last, with the full margin, and only where it adds core
-    states or more than 2 percent of all.
+    states or more than the share that may be given up (2 percent).
     """
     wanted = harmful_states(evidence.scenarios)
     chosen = _choose_each(evidence, wanted)
@@ -61,7 +57,7 @@ def settle(evidence: Evidence) -> Settled:
         evidence.relay.device.name,
         evidence.site.digest,
         tuple(s for f in ORDER if f in chosen for s in _stages(evidence.ladders[f], chosen[f])),
-        INHIBIT_S,
+        evidence.site.judgement.inhibit_s,
         "by hand",
     )
     return Settled(settings, reasons)
@@ -99,13 +95,13 @@ def _addition(
     """Stages with the full margin for what is left, if that is worth a setting."""
     need = demand(ladder, evidence.scenarios, _core(evidence, left))
     own = demand(ladder, evidence.scenarios, left)
-    rungs = best_cover(ladder, own, need, ladder.element.stages, MARGIN_CAP_UNITS)
+    rungs = best_cover(ladder, own, need, ladder.element.stages, ladder.judgement.margin_cap_units)
     mine = {ladder.element.function: rungs}
     still = _without(evidence, left, mine, tuple(mine))
     added = sum(int(a.sum() - b.sum()) for a, b in zip(left, still, strict=True))
     core = sum(int((a & ~b & s.core).sum()) for a, b, s in zip(left, still, evidence.scenarios, strict=True))
     total = sum(int(w.sum()) for w in wanted)
-    return rungs if core or added > (1 - COVER_KEPT) * total else ()
+    return rungs if core or added > (1 - ladder.judgement.cover_kept) * total else ()
 
 
 def _without(
@@ -185,10 +181,11 @@ def _why_off(
     evidence: Evidence, function: Function, chosen: dict[Function, tuple[Rung, ...]], wanted: tuple[BoolArray, ...]
 ) -> str:
     ladder = evidence.ladders.get(function)
+    little = f"{100 * (1 - evidence.site.judgement.cover_kept):.3g} %"
     if ladder is None:
         return "the device does not have it"
     if chosen[function]:
-        return "a further stage would clear less than 2 % more"
+        return f"a further stage would clear less than {little} more"
     if not any(w.any() for w in wanted):
         return "no modelled break state harms anything"
     if ladder.element.line_to_line_only:
@@ -198,5 +195,5 @@ def _why_off(
     if not np.isfinite(ladder.clearing[ladder.fastest()]).any():
         return "none of its pickups has a secure delay"
     if function is Function.UNBALANCE:
-        return "it adds no core state and less than 2 % of the others"
+        return f"it adds no core state and less than {little} of the others"
     return "no secure setting clears a harmful state in time"

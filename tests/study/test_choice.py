@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from relaycfg.model.device import Accuracy, Device, Element, Function, SettableRange
+from relaycfg.model.judgement import Judgement
 from relaycfg.model.site import Feed, Relay
 from relaycfg.study.choice import Demand, choose, covered_by, demand, detection_rung, harmful_states
 from relaycfg.study.ladder import Ladder
@@ -41,7 +42,8 @@ def ladder(rng: np.random.Generator, stages: int, function: Function) -> Ladder:
     standing = sign * (227.0 if sign < 0 else 233.0)
     numbers = tuple(range(6))
     runs = Runs(sign * volts, seconds, names, numbers, dict(enumerate(names)), standing, "standing", 0.02, False)
-    return Ladder(element, relay, 50.0, 230.0, 3**0.5, runs)
+    judgement = Judgement(margin_cap_units=2.0, cover_kept=0.98, deadline_kept_units=1.0)
+    return Ladder(element, relay, 50.0, 230.0, 3**0.5, runs, judgement)
 
 
 def scenario(rng: np.random.Generator, function: Function, states: int) -> Scenarios:
