@@ -233,7 +233,7 @@ def _apart(dense: Dense, network: Network, solved, emf, states, state: int, star
         return np.inf
     worst = 0.0
     for number, name in enumerate(network.boards):
-        l_n, n_earth, _ = dense.board(unknowns, emf, name)
+        l_n, n_earth, _ = dense.board(unknowns, name)
         worst = max(worst, *np.abs(solved.l_n[number, :, state] - l_n), abs(solved.n_earth[number, state] - n_earth))
     return float(worst)
 
