@@ -140,7 +140,9 @@ class Sweeper:
                 self.weight_re @ b_im + self.weight_im @ b_re,
             ]
         )
-        shift = np.maximum(0, 1.05 * np.hypot(*beta) - alpha[0])
+        least = 1.05 * np.hypot(*beta)
+        # More than just positive: generation alone would leave alpha at nothing, and a step of nothing looks like rest.
+        shift = np.where(alpha[0] < least, least + 0.05 * np.hypot(*alpha) - alpha[0], 0)
         return Jacobian(a_re, a_im, b_re, b_im, alpha, beta, shift)
 
     def joint_step(self, residual: FloatArray, d_re: FloatArray, d_im: FloatArray, jac: Jacobian) -> FloatArray:

@@ -1,4 +1,7 @@
-"""Laws that any network obeys: closed forms, symmetries, limits. Each check names where it comes from."""
+"""Laws that any network obeys: closed forms and limits. Each check names where it comes from.
+
+Those that hold on every network stand as properties in test_laws_currents, test_laws_symmetry and test_laws_joints.
+"""
 
 from dataclasses import replace
 
@@ -10,7 +13,7 @@ from hypothesis import strategies as st
 from relaycfg.model.geometry import three_phase
 from relaycfg.model.site import Site
 from relaycfg.network import Network, Solved, connected, healthy_emf, join, least, tap
-from tests.network.sites import board, cable, impedance, load, motor, site
+from tests.network.sites import board, cable, impedance, load, site
 
 LINES = ("L1", "L2", "L3")
 MIXED = (0.3, 0.3, 0.4)
@@ -54,7 +57,7 @@ def test_change_of_one_load_moves_all_three_voltages() -> None:
 
 
 @given(st.lists(st.floats(0.01, 100), min_size=3, max_size=3))
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=40, deadline=None, derandomize=True)
 def test_resistive_loads_never_see_more_than_the_line_voltage(watts: list[float]) -> None:
     """Source: common practice, no source; own arithmetic (star point inside the triangle)."""
     assert volts(solve(lamps(*watts))).max() <= 250 * 3**0.5 + 1e-6
@@ -64,7 +67,7 @@ ohms = st.tuples(st.floats(0.5, 500), st.floats(-200, 500)).map(lambda z: comple
 
 
 @given(st.lists(ohms, min_size=3, max_size=3))
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=60, deadline=None, derandomize=True)
 def test_ideal_source_agrees_with_millman(z: list[complex]) -> None:
     """Source: own arithmetic, Millman's closed form, and the mean-square invariant."""
     made = site([board("A")], [impedance("A", at, ohm) for at, ohm in zip(LINES, z, strict=True)])
@@ -76,28 +79,6 @@ def test_ideal_source_agrees_with_millman(z: list[complex]) -> None:
     assert (volts(solved) ** 2).mean() == pytest.approx(230**2 + abs(vn) ** 2, rel=1e-9)
 
 
-def test_break_behind_a_stiff_source_is_pure_zero_sequence() -> None:
-    """Source: own arithmetic: a shift of the star point is in V0 alone. Loads of mixed kind."""
-    loads = [load("A", at, p, 0.3 * p, zip_p=MIXED) for at, p in zip(LINES, (6e3, 3e3, 2e3), strict=True)]
-    solved = solve(site([board("A")], loads))
-    v0, v1, v2 = three_phase().sequences(solved.l_n[0, :, 0])
-    assert v1 == pytest.approx(230, abs=1e-6)
-    assert abs(v2) < 1e-6
-    assert v0 == pytest.approx(-solved.joint_v[0], abs=1e-6)
-    assert abs(v0) > 30
-
-
-def test_line_to_line_loads_and_three_wire_motors_do_not_move_the_neutral() -> None:
-    """Source: own arithmetic (no zero-sequence path), stiff source."""
-    plain = lamps(500.0, 200.0, 100.0, volts=230.0)
-    more = replace(
-        plain,
-        loads=(*plain.loads, load("A", "L1-L2", 4e3, zip_p=MIXED), load("A", "all", 9e3, 4e3, zip_p=MIXED)),
-        motors=(motor("A", 5e3 + 3e3j, 10e3 + 30e3j),),
-    )
-    assert solve(more).l_n == pytest.approx(solve(plain).l_n, abs=1e-6)
-
-
 def test_star_tied_to_the_neutral_is_three_branches_of_a_third() -> None:
     """Source: own arithmetic (definition)."""
     plain = lamps(500.0, 200.0, 100.0, volts=230.0)
@@ -106,54 +87,16 @@ def test_star_tied_to_the_neutral_is_three_branches_of_a_third() -> None:
     assert solve(tied).l_n == pytest.approx(solve(apart).l_n, abs=1e-6)
 
 
-def test_turning_the_loads_turns_the_voltages() -> None:
-    """Source: own arithmetic (symmetry of the lines)."""
-    watts = (6e3, 3e3, 1e3)
-    turned = (1e3, 6e3, 3e3)
-
-    def made(p: tuple[float, ...]) -> Site:
-        loads = [load("A", at, x, 0.2 * x, zip_p=MIXED) for at, x in zip(LINES, p, strict=True)]
-        return site([board("A", cable=cable(0.1 + 0.05j))], loads, line_ohm=0.01 + 0.02j)
-
-    assert volts(solve(made(turned), "A")) == pytest.approx(np.roll(volts(solve(made(watts), "A")), 1), abs=1e-6)
-
-
-def test_superposition_of_linear_loads() -> None:
-    """Source: own arithmetic (linearity): the answer to a sum of EMFs is the sum of the answers."""
-    made = site(
-        [board("A", cable=cable(0.1 + 0.05j))],
-        [impedance("A", at, z) for at, z in zip(LINES, (9 + 1j, 20 - 3j, 35 + 0j), strict=True)],
-        [motor("A", 5e3 + 3e3j, 10e3 + 30e3j)],
-        line_ohm=0.02 + 0.02j,
-    )
-    network, states = Network(made), connected(made)
-    first, second = np.array([230, 0, -40j]), np.array([0, -100 - 200j, 30])
-    together = network.solve("A", states, first + second)
-    apart = network.solve("A", states, first).l_n + network.solve("A", states, second).l_n
-    assert together.l_n == pytest.approx(apart, abs=1e-6)
-
-
-def test_joint_voltage_rises_with_its_resistance() -> None:
-    """Source: own arithmetic (passive loads), limits: no ohms are a sound neutral, many an open one."""
+def test_no_ohms_in_a_joint_are_a_sound_neutral_and_many_an_open_one() -> None:
+    """Source: limits; what lies between is a law on drawn networks (test_laws_joints)."""
     made = site(
         [board("A", cable=cable(0.1 + 0.05j))],
         [load("A", at, p, zip_p=MIXED) for at, p in zip(LINES, (6e3, 3e3, 2e3), strict=True)],
     )
-    across = [abs(solve(made, "A", ohm).joint_v[0]) for ohm in (0.0, 0.01, 0.1, 1.0, 10.0, 100.0, 1e9)]
-    assert across == sorted(across)
-    assert across[0] == 0
-    assert across[-1] == pytest.approx(abs(solve(made, "A").joint_v[0]), abs=1e-4)
     sound, shorted = solve(made, "none"), solve(made, "A", 0.0)
     assert shorted.l_n == pytest.approx(sound.l_n, abs=1e-6)
     assert shorted.joint_a[0] == pytest.approx(sound.neutral_a[0, 0], abs=1e-6)
-
-
-def test_joint_obeys_ohm() -> None:
-    """Source: own arithmetic."""
-    made = site([board("A", cable=cable(0.1 + 0.05j))], [load("A", "L1", 6e3, zip_p=MIXED)])
-    solved = solve(made, "A", 2.5)
-    assert solved.joint_v[0] == pytest.approx(2.5 * solved.joint_a[0], abs=1e-6)
-    assert solved.joint_a[0] == pytest.approx(solved.neutral_a[0, 0], abs=1e-6)
+    assert solve(made, "A", 1e9).l_n == pytest.approx(solve(made, "A").l_n, abs=1e-4)
 
 
 @pytest.mark.parametrize("zip_p", [(1.0, 0.0, 0.0), MIXED])
