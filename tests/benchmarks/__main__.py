@@ -14,7 +14,7 @@ import time
 
 import numpy as np
 
-from tests.benchmarks import network, study
+from tests.benchmarks import engine, network, study
 from tests.benchmarks.report import table
 
 
@@ -22,7 +22,7 @@ def main() -> None:
     """Measure everything and print one table."""
     start = time.perf_counter()
     rows = []
-    for row in (*network.measure(), *study.measure()):
+    for row in (*network.measure(), *engine.measure(), *study.measure()):
         rows.append(row)
     print(table(rows))
     missed = [row.measure.strip() for row in rows if row.cells()[-1] == "missed"]
