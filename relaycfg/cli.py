@@ -18,13 +18,21 @@ from relaycfg.options import (
     LINES,
     NOMINAL_V,
     READ_V,
+    RELAY,
     SITE,
+    SYSTEMS,
+    USUAL_V,
+    ReadingCommand,
     a_path,
     help_end,
+    known_state,
     load_state,
     number,
+    one_system,
+    readings,
+    studied,
     study_options,
-    three_readings,
+    together,
 )
 from relaycfg.streams import (
     NO_OUTPUT,
@@ -40,6 +48,7 @@ from relaycfg.streams import (
 )
 
 if TYPE_CHECKING:
+    from relaycfg.model.geometry import System
     from relaycfg.model.results import Study
     from relaycfg.model.site import Site
 
@@ -71,9 +80,15 @@ def program() -> None:
     "--volts",
     type=number(*NOMINAL_V, "volts"),
     metavar="V",
-    default=230.0,
-    show_default=True,
+    show_default="230; with two lines 120",
     help="Nominal volts, line to neutral, 50 to 600.",
+)
+@click.option(
+    "--system",
+    type=click.Choice(SYSTEMS),
+    default=SYSTEMS[0],
+    show_default=True,
+    help="Three lines of a star, split phase, or two lines of a star.",
 )
 @click.option(
     "--earthing",
@@ -84,11 +99,11 @@ def program() -> None:
 )
 @click.option("--loads", type=click.Path(path_type=Path), help="Loads to start from, .csv or .xlsx.")
 @FORCE
-def new(folder: Path, volts: float, earthing: str, loads: Path | None, force: bool) -> int:
+def new(folder: Path, volts: float | None, system: "System", earthing: str, loads: Path | None, force: bool) -> int:
     """Write a starter site into DIR: commented site.toml, loads.csv and relay.toml."""
     from relaycfg.files import write_starter
 
-    paths = write_starter(folder, volts, earthing, loads, force)
+    paths = write_starter(folder, USUAL_V[system] if volts is None else volts, earthing, loads, force, system)
     show_written("\n".join(map(str, paths)))
     return DONE
 
@@ -106,9 +121,11 @@ def new(folder: Path, volts: float, earthing: str, loads: Path | None, force: bo
     "--state",
     metavar="STATE",
     callback=load_state,
-    help='One kind of load states only: connected, least, corners or sample; "sample 17" shows that sampled state.',
+    help="Some load states only: connected, least, corners, sample, or worst (the highest volts of all on/off "
+    'combinations); "sample 17" shows that sampled state, "on: A; B" what is always on with loads A and B.',
 )
 @click.option("--all", "everything", is_flag=True, help="Every state and board, N-PE and unbalance at the relay.")
+@RELAY
 @study_options
 def breaks(
     site: str,
@@ -116,17 +133,19 @@ def breaks(
     joint_ohm: float | None,
     state: str | None,
     everything: bool,
+    relay: str | None,
     form: str,
     samples: int,
     seed: int,
     quiet: bool,
 ) -> int:
     """Show what a lost neutral does: every place it can break, every board, what the relay sees."""
-    found, _ = open_site(site, quiet, need_relay=False)
+    found, _ = open_site(site, quiet, relay, need_relay=False)
     from relaycfg.study import breaks as study_breaks
     from relaycfg.text import breaks_dict, breaks_text
 
     at = None if place is None else known_place(found, place)
+    known_state(found, state, at)
     drawn = samples if state in (None, "sample") else 0
     where = len(found.places) if at is None else 1
     announce(quiet, "computing every break", drawn, where, BREAK_S)
@@ -156,13 +175,24 @@ def breaks(
     help="The ride-through and withstand curves with the case behind every step; in JSON the V0 plane too.",
 )
 @FORCE
+@RELAY
 @study_options
-def derive(site: str, output: Path, explain: bool, force: bool, form: str, samples: int, seed: int, quiet: bool) -> int:
+def derive(
+    site: str,
+    output: Path,
+    explain: bool,
+    force: bool,
+    relay: str | None,
+    form: str,
+    samples: int,
+    seed: int,
+    quiet: bool,
+) -> int:
     """Derive settings for a new installation, with bounds, reasons, margins and cases.
 
     The path written comes last on standard output; with --format json on standard error, so that the JSON stays whole.
     """
-    found, read = open_site(site, quiet or form == "text")
+    found, read = open_site(site, quiet or form == "text", relay)
     from relaycfg.files import check_new, settings_text, write_new
     from relaycfg.study import derive as study_derive
     from relaycfg.text import curves_text, derive_text, settings_comments, study_dict
@@ -188,10 +218,11 @@ def derive(site: str, output: Path, explain: bool, force: bool, form: str, sampl
     type=click.Path(path_type=Path),
     callback=a_path(GIVE_SETTINGS),
 )
+@RELAY
 @study_options
-def check(site: str, settings: Path, form: str, samples: int, seed: int, quiet: bool) -> int:
+def check(site: str, settings: Path, relay: str | None, form: str, samples: int, seed: int, quiet: bool) -> int:
     """Check existing settings against must-hold cases and neutral breaks."""
-    found, _ = open_site(site, quiet or form == "text")
+    found, _ = open_site(site, quiet or form == "text", relay)
     from relaycfg.files import read_settings
     from relaycfg.study import check as study_check
     from relaycfg.text import check_text, study_dict
@@ -224,12 +255,14 @@ def check(site: str, settings: Path, form: str, samples: int, seed: int, quiet: 
     help="Where the sheet goes; default <number>-<revision>.pdf.",
 )
 @FORCE
+@RELAY
 @study_options
 def sheet(
     site: str,
     settings: Path | None,
     output: Path | None,
     force: bool,
+    relay: str | None,
     form: str,
     samples: int,
     seed: int,
@@ -239,7 +272,7 @@ def sheet(
 
     The path written comes last on standard output; with --format json on standard error, so that the JSON stays whole.
     """
-    found, read = open_site(site, quiet)
+    found, read = open_site(site, quiet, relay)
     from relaycfg.files import check_new, read_settings, templates_dir, write_new
     from relaycfg.sheet import render
     from relaycfg.study import check as study_check
@@ -264,37 +297,46 @@ def sheet(
 
 
 @program.command(
+    cls=ReadingCommand,
     epilog=help_end("relaycfg reading 172 263 263"),
     context_settings={"ignore_unknown_options": True},  # a reading of -5 is a wrong number, not an option
 )
-@click.argument("l_n", nargs=-1, type=number(*READ_V, "volts"), callback=three_readings, metavar="V1 V2 V3")
+@click.argument("l_n", nargs=-1, type=number(*READ_V, "volts"), callback=readings, metavar="V1 V2 [V3]")
 @click.option(
     "--line-to-line",
     "l_l",
     nargs=len(LINES),
     type=number(*READ_V, "volts"),
-    metavar="V12 V23 V31",
-    help="Volts between lines, read at the same time.",
+    metavar="V12 [V23 V31]",
+    callback=together,
+    help="Volts between lines, read at the same time; behind the readings where there are two.",
+)
+@click.option(
+    "--system",
+    type=click.Choice(SYSTEMS),
+    help="Three lines of a star, split phase, or two lines of a star; default: split phase for two readings.",
 )
 @click.option(
     "--nominal",
     type=number(*NOMINAL_V, "volts"),
     metavar="V",
-    default=230.0,
-    show_default=True,
+    show_default="230; with two lines 120",
     help="Nominal volts, line to neutral, 50 to 600.",
 )
-def reading(l_n: tuple[float, float, float], l_l: tuple[float, float, float] | None, nominal: float) -> int:
+def reading(
+    l_n: tuple[float, ...], l_l: tuple[float, ...] | None, system: "System | None", nominal: float | None
+) -> int:
     """Say what a meter reading means: lost neutral, lost phase or supply; what to check first, what not to do."""
-    from relaycfg.study import read_meter
+    from relaycfg.study import read_board
     from relaycfg.text import reading_text
 
-    show_text(reading_text(read_meter(l_n, l_l, nominal)))
+    kind = one_system(len(l_n), system)
+    show_text(reading_text(read_board(l_n, l_l, kind, USUAL_V[kind] if nominal is None else nominal)))
     return DONE
 
 
-def open_site(site: str, quiet: bool, need_relay: bool = True) -> tuple["Site", tuple[Path, ...]]:
-    """The site of a file, or of stdin for ``-``, and the files read for it.
+def open_site(site: str, quiet: bool, relay: str | None, need_relay: bool = True) -> tuple["Site", tuple[Path, ...]]:
+    """The site of a file, or of stdin for ``-``, with the relay to study, and the files read for it.
 
     Its warnings go to stderr, where the result does not print them.
     """
@@ -308,7 +350,7 @@ def open_site(site: str, quiet: bool, need_relay: bool = True) -> tuple["Site", 
         read = tuple(map(Path, found.files))
     for warning in found.warnings:
         tell(quiet, f"warning: {warning}")
-    return found, read
+    return studied(found, relay), read
 
 
 def known_place(site: "Site", given: str) -> str:

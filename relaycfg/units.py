@@ -4,6 +4,8 @@ import math
 
 ABSENT = "-"
 FOR_EVER = "for ever"
+MANY_OHM = 999.5
+"""From here on three digits would need an exponent."""
 FEW_SECONDS = 0.1
 """Below this, seconds get a third decimal [s]."""
 
@@ -34,8 +36,10 @@ def watts(value: float | None) -> str:
 
 
 def ohms(value: float | None) -> str:
-    """Ohms to three significant digits."""
-    return ABSENT if _absent(value) else f"{value:.3g}"
+    """Ohms to three significant digits, from a thousand on to whole ohms."""
+    if value is None or _absent(value):
+        return ABSENT
+    return count(round(value)) if abs(value) >= MANY_OHM else f"{value:.3g}"
 
 
 def percent(value: float | None) -> str:
@@ -58,6 +62,11 @@ def parts(value: float | None) -> str:
 def asymmetry(value: float | None) -> str:
     """The k of loads k:1:1, to two decimals."""
     return _decimals(value, 2)
+
+
+def load_ratio(value: float, lines: int, between: str = ":") -> str:
+    """Loads of which one is k times each other, such as 1.33:1:1."""
+    return between.join([asymmetry(value), *["1"] * (lines - 1)])
 
 
 def ratio(value: float | None) -> str:

@@ -218,7 +218,69 @@ def test_a_sampled_state_is_shown_again_by_the_number_it_was_named_with(capsys):
 def test_an_unknown_state_is_refused_with_the_known_ones(state, capsys):
     code, out, err = run(capsys, "breaks", "--state", state)
     assert (code, out) == (2, "")
-    assert 'is not one of connected, least, corners, sample, or a sampled state such as "sample 17"' in err
+    assert "is not one of connected, least, corners, sample, worst, a sampled state such as " in err
+    assert '"sample 17", or "on: A; B"' in err
+
+
+@pytest.mark.usefixtures("site")
+def test_the_worst_combination_is_shown_again_by_name_and_by_the_loads_it_lists(capsys):
+    narrow = ["--at", "source", *FEW]
+    (highest,) = json.loads(run(capsys, "breaks", *narrow, "--format", "json")[1])["highest"]
+    for state in ("worst", "on: " + "; ".join(highest["loads_on"])):
+        (row,) = json.loads(run(capsys, "breaks", *narrow, "--format", "json", "--state", state)[1])["breaks"]
+        assert row["state"] == state
+        assert max(row["boards"][highest["board"]]["l_n_v"]) == pytest.approx(highest["modelled_v"], abs=1e-6)
+    code, out, _ = run(capsys, "breaks", *narrow, "--state", "worst")
+    assert code == 0
+    assert "star link, on: " + "; ".join(["what is always on", *highest["loads_on"]]) in " ".join(out.split())
+
+
+@pytest.mark.usefixtures("site")
+def test_loads_the_site_has_not_and_a_worst_state_without_a_break_are_refused(capsys):
+    code, out, err = run(capsys, "breaks", "--state", "on: Attic fan; Moon lamp")
+    assert (code, out) == (2, "")
+    assert "the site has no load or motor called Attic fan; Moon lamp; separate names by semicolons" in err
+    code, out, err = run(capsys, "breaks", "--at", "none", "--state", "worst")
+    assert (code, out) == (2, "")
+    assert "the worst state is that of a break; give its place" in err
+
+
+def second_relay(site):
+    """A second relay at a sub-board in the site's own file; the names of both, and of that board."""
+    text = (site / "site.toml").read_text("utf-8")
+    parsed = tomllib.loads(text)
+    first, board = parsed["relay"][0], parsed["board"][-1]["name"]
+    more = f'\n[[relay]]\nname = "Second"\nmeasures_at = "{board}"\ndevice = "{first["device"]}"\n'
+    (site / "site.toml").write_text(text + more, "utf-8")
+    return first["name"], board
+
+
+def test_a_relay_is_chosen_by_name_and_its_settings_belong_to_it(site, capsys):
+    first, board = second_relay(site)
+    for chosen, name in (([], first), (["--relay", "Second"], "Second")):
+        code, out, _ = run(capsys, "derive", *chosen, "-o", "mine.toml", "--force", *FEW)
+        assert code in (0, 1)
+        assert out.startswith(f"{name}, ")
+        assert tomllib.loads((site / "mine.toml").read_text("utf-8"))["for_relay"] == name
+        assert run(capsys, "check", "site.toml", "mine.toml", *chosen, *FEW)[1].startswith(f"{name}, ")
+    code, out, err = run(capsys, "check", "site.toml", "mine.toml", *FEW)
+    assert (code, out) == (2, "")
+    assert f'for_relay is "Second", and {first} is judged; add --relay "Second"' in err
+    code, out, _ = run(capsys, "sheet", "--relay", "Second", "-o", "mine.pdf", *FEW)
+    assert code in (0, 1)
+    assert (site / "mine.pdf").read_bytes().startswith(b"%PDF")
+    result = json.loads(run(capsys, "derive", "-o", "mine.toml", "--force", "--format", "json", *FEW)[1])
+    assert [t["at"] for t in result["together"]] == [s["at"] for s in result["summary"]]
+    assert "Second" in {name for t in result["together"] for name in t["alone"]}
+    assert board in {t["at"] for t in result["together"]}
+
+
+@pytest.mark.parametrize("command", ["breaks", "derive", "check", "sheet"])
+def test_an_unknown_relay_is_refused_with_the_known_ones(command, site, capsys):
+    first, _ = second_relay(site)
+    code, out, err = run(capsys, command, "--relay", "Third")
+    assert (code, out) == (2, "")
+    assert f"'Third' is no relay of this site; give one of {first}, Second" in err
 
 
 @pytest.mark.usefixtures("site")
@@ -284,7 +346,10 @@ def test_a_missing_site_is_bad_input(command, tmp_path, monkeypatch, capsys):
 @pytest.mark.parametrize(
     "arguments",
     [
-        ["reading", "172", "263"],
+        ["reading", "172"],
+        ["reading", "172", "263", "--system", "3ph-4w"],
+        ["reading", "172", "263", "263", "--system", "1ph-3w"],
+        ["reading", "172", "263", "--line-to-line", "398", "398", "398"],
         ["reading", "172", "263", "nan"],
         ["reading", "172", "263", "inf"],
         ["reading", "172", "263", "2630"],
@@ -312,8 +377,9 @@ def test_bad_usage_is_exit_2_with_nothing_on_stdout(arguments, capsys):
         (["reading", "172,5", "230", "230"], "'172,5' has a decimal comma; write 172.5"),
         (["reading", "x", "230", "230"], "'x' is no number"),
         (["reading", "1", "2", "3", "--nought"], "'--nought' is no option of this command, and no number"),
-        (["reading", "1", "2"], "give 3 readings, line to neutral in order L1 L2 L3; 2 given"),
-        (["reading", "1", "2", "3", "4"], "give 3 readings, line to neutral in order L1 L2 L3; 4 given"),
+        (["reading", "1"], "in order L1 L2 L3, or 2 where there are two lines; 1 given"),
+        (["reading", "1", "2", "--system", "3ph-4w"], "'3ph-4w' does not have 2 lines"),
+        (["reading", "1", "2", "3", "4"], "give 3 readings, line to neutral in order L1 L2 L3, or 2 where"),
         (["reading", "1", "2", "3", "--nominal", "700"], "700 is outside 50 to 600 volts"),
         (["reading", "1", "2", "3", "--line-to-line", "4", "-5", "6"], "-5 is outside 0 to 1500 volts"),
         (["new", "there", "--volts", "49"], "49 is outside 50 to 600 volts"),
@@ -466,6 +532,38 @@ def test_reading_needs_no_site_file(tmp_path, monkeypatch, capsys):
     code, out, err = run(capsys, "reading", "172", "263", "263", "--line-to-line", "398", "398", "398")
     assert (code, err) == (0, "")
     assert "very likely: lost or loose neutral" in out
+
+
+@pytest.mark.parametrize(
+    "words",
+    [
+        ("160", "80", "--line-to-line", "240"),
+        ("160", "80", "--nominal", "120", "--line-to-line", "240"),
+        ("--system", "1ph-3w", "160", "80", "--line-to-line=240"),
+    ],
+)
+def test_reading_takes_two_lines_with_the_one_voltage_between_them(words, capsys):
+    code, out, _ = run(capsys, "reading", *words)
+    assert code == 0
+    assert "between lines 240 V; nominal 120 V" in out
+    assert "Neutral displaced by 40.0 V" in out
+    assert "1.0 : 2.0 on L1 : L2" in out
+
+
+def test_reading_goes_on_taking_three_voltages_between_three_lines_in_any_order(capsys):
+    first = run(capsys, "reading", "172", "263", "263", "--line-to-line", "398", "398", "398")
+    assert first == run(capsys, "reading", "--line-to-line", "398", "398", "398", "172", "263", "263")
+    assert first[0] == 0
+
+
+@pytest.mark.parametrize(("system", "between"), [("1ph-3w", "240 V"), ("2ph-3w", "208 V")])
+def test_new_writes_a_site_of_two_lines_that_every_command_runs_on(system, between, tmp_path, monkeypatch, capsys):
+    assert run(capsys, "new", str(tmp_path / "new"), "--system", system)[0] == 0
+    monkeypatch.chdir(tmp_path / "new")
+    assert f"not the {between} between lines" in Path("site.toml").read_text("utf-8")
+    for command in ("breaks", "derive", "check", "sheet"):
+        code, out, err = run(capsys, command, "--samples", "50")
+        assert (code, err.count("warning")) == (0, 0), (command, out, err)
 
 
 def test_reading_takes_other_nominal_volts(capsys):

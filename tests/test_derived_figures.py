@@ -1,7 +1,8 @@
 """Figures the program derives, from a user's file to the result, against published tables and examples by hand.
 
-What it does not derive: electrodes from rod and soil, groups of rods, sizes of an electrode for a touch voltage, cable
-sections from a wire gauge, ohms of overhead lines, starting current from a code letter, derating of motors.
+Electrodes of rods and soil stand in ``tests/files/test_electrodes.py``.
+What it does not derive: sizes of an electrode for a touch voltage, cable sections from a wire gauge, ohms of overhead
+lines, starting current from a code letter, derating of motors.
 The three definitions of unbalance on 400/395/388 V and others stand in ``tests/relay/test_quantities.py``.
 """
 

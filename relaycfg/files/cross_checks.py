@@ -2,8 +2,10 @@
 
 from relaycfg.files.draft import Draft, PlacedLoad
 from relaycfg.files.duty_checks import LATER, check_cases, check_equipment, check_motors_and_faults, check_relay
+from relaycfg.files.electrode_checks import check_electrodes
 from relaycfg.files.ledger import printed
 from relaycfg.files.limits import LINE_TO_LINE_NEAR
+from relaycfg.files.line_checks import check_lines
 from relaycfg.files.load_checks import check_loads
 from relaycfg.files.loads import is_workbook
 from relaycfg.files.name_checks import check_board, check_unique
@@ -11,7 +13,7 @@ from relaycfg.files.site_form import CableForm
 from relaycfg.files.tables import Tables, names
 from relaycfg.files.text import choose
 from relaycfg.files.unused import SOURCE_KEYS, quoted, unused
-from relaycfg.model.geometry import three_phase
+from relaycfg.model.geometry import Geometry, geometry_of, three_phase
 from relaycfg.model.site import SOURCE
 
 OHM_KEYS = ("line_ohm", "neutral_ohm", "pe_ohm")
@@ -28,6 +30,8 @@ def cross_check(draft: Draft, loads: list[PlacedLoad], tables: Tables, need_rela
     _feeds(draft)
     _cables(draft)
     _earthing(draft)
+    check_electrodes(draft)
+    check_lines(draft, loads)
     check_loads(draft, loads)
     check_motors_and_faults(draft)
     check_relay(draft, need_relay)
@@ -35,9 +39,9 @@ def cross_check(draft: Draft, loads: list[PlacedLoad], tables: Tables, need_rela
     check_cases(draft)
 
 
-def meant_star_voltage(volts: float, tables: Tables) -> float | None:
+def meant_star_voltage(volts: float, tables: Tables, geometry: Geometry | None = None) -> float | None:
     """The line-to-neutral voltage that is meant where ``volts`` looks like one between lines, else None."""
-    star = star_voltage(volts / three_phase().line_to_line_ratio, tables)
+    star = star_voltage(volts / (geometry or three_phase()).line_to_line_ratio, tables)
     return star if star_voltage(volts, tables) is None else None
 
 
@@ -53,9 +57,7 @@ def _supply(draft: Draft, tables: Tables) -> None:
     supply = draft.supply
     if supply is None:
         return
-    if supply.system != "3ph-4w":
-        draft.add(("supply", "system"), f'"{supply.system}", {LATER}', 'write "3ph-4w"')
-    star = meant_star_voltage(supply.nominal_v, tables)
+    star = meant_star_voltage(supply.nominal_v, tables, geometry_of(supply.system))
     if star is not None:
         draft.add(
             ("supply", "nominal_v"),
@@ -77,8 +79,9 @@ def _source(draft: Draft, tables: Tables) -> None:
     if len(draft.sources) > 1:
         draft.add(draft.sources[1].loc, f"a second source, {LATER}", "keep one [[source]]")
     nominal = draft.supply.nominal_v if draft.supply else None
+    geometry = geometry_of(draft.supply.system) if draft.supply else three_phase()
     if nominal is not None:
-        nominal = meant_star_voltage(nominal, tables) or nominal
+        nominal = meant_star_voltage(nominal, tables, geometry) or nominal
     for entry in draft.sources[:1]:
         form = entry.form
         needs = {"transformer": ("rating_kva",), "generator": ("rating_kva",), "impedance": ("line_ohm",)}[form.kind]
@@ -90,7 +93,7 @@ def _source(draft: Draft, tables: Tables) -> None:
             draft.add((*entry.loc, name), f'not used by kind = "{form.kind}"', remedy)
         low, high = tables.row("default-no-load-range").value
         if form.no_load_v is not None and nominal is not None and not low <= form.no_load_v / nominal <= high:
-            line = abs(form.no_load_v / nominal / three_phase().line_to_line_ratio - 1) < LINE_TO_LINE_NEAR
+            line = abs(form.no_load_v / nominal / geometry.line_to_line_ratio - 1) < LINE_TO_LINE_NEAR
             looks = ", which looks like a line-to-line voltage" if line else ""
             draft.add(
                 (*entry.loc, "no_load_v"),

@@ -10,7 +10,7 @@ from relaycfg.files.device_form import DelayForm, DeviceForm, ElementForm, Range
 from relaycfg.files.ledger import Ledger, figure
 from relaycfg.files.text import TomlFile, Trace, decode, read_bytes
 from relaycfg.files.unused import ELEMENT_KEYS, unused
-from relaycfg.model.device import Accuracy, Device, Element, Function, SettableRange
+from relaycfg.model.device import Accuracy, Device, Element, Function, LeftOut, SettableRange, why_left_out
 from relaycfg.model.geometry import Geometry
 from relaycfg.model.site import Supply
 
@@ -95,10 +95,13 @@ def resolve_device(form: DeviceForm, supply: Supply, at: str, ledger: Ledger, wa
         place = f"{at}element.{element.function}."
         declared = _accuracy(element)
         resolved = _element(form, element, place, declared, ledger)
-        if element.function == "59N" and form.displacement_from == "l-n":
+        if element.function == "59N" and form.displacement_from == "l-n" and supply.geometry.has_displacement:
             floor = channel_floor(form, supply, resolved.quantity)
             resolved = replace(resolved, accuracy=_with_floor(element, declared, floor, place, ledger, warnings))
         elements.append(resolved)
+    reasons = [why_left_out(element, form.displacement_from, supply.geometry) for element in elements]
+    left_out = tuple(LeftOut(e, why) for e, why in zip(elements, reasons, strict=True) if why)
+    warnings.extend(f"Device: its {left.element.function.value} has to be off: {left.why}." for left in left_out)
     return Device(
         name=form.name,
         measures=tuple(form.measures),
@@ -107,7 +110,8 @@ def resolve_device(form: DeviceForm, supply: Supply, at: str, ledger: Ledger, wa
         refresh_cycles=ledger.pick(at + "refresh_cycles", form.refresh_cycles, "default-device-refresh", "cycles"),
         timers=ledger.pick(at + "timers", form.timers, "default-device-timers"),
         displacement_from=form.displacement_from,
-        elements=tuple(elements),
+        elements=tuple(e for e, why in zip(elements, reasons, strict=True) if not why),
+        left_out=left_out,
     )
 
 

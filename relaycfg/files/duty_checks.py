@@ -22,12 +22,11 @@ def check_motors_and_faults(draft: Draft) -> None:
 
 
 def check_relay(draft: Draft, need_relay: bool) -> None:
-    """One relay at known boards, its feeds with the range they work in."""
+    """Relays with names of their own at known boards, their feeds with the range they work in."""
     if need_relay and draft.lacks("relay"):
         draft.add(("relay",), "missing", "write a [[relay]] table with name, measures_at and device")
-    if len(draft.relays) > 1:
-        draft.add(draft.relays[1].loc, f"a second relay, {LATER}", "keep one [[relay]]")
-    for entry in draft.relays[:1]:
+    check_unique(draft, [((*e.loc, "name"), e.form.name) for e in draft.relays])
+    for entry in draft.relays:
         check_board(draft, (*entry.loc, "measures_at"), entry.form.measures_at)
         if entry.form.trips is not None:
             check_board(draft, (*entry.loc, "trips"), entry.form.trips)

@@ -57,6 +57,18 @@ class LoadForm(Form):
         row="default-load-third-harmonic",
     )  # fmt: skip
     minds_low_v: bool = key("low voltage harms it", default=False)
+    cutout_pu: float | None = key(
+        "volts below which it drops out while the neutral is lost", unit="pu", ask="per unit", gt=0, lt=1,
+        otherwise="of the kind, else it never does",
+    )  # fmt: skip
+    restart_s: float | None = key(
+        "it starts again so long after its volts are back in its band", unit="s", ask="seconds", gt=0, le=3600,
+        otherwise="of the kind, else it stays out",
+    )  # fmt: skip
+    damage_pu: float | None = key(
+        "volts at which it fails open", unit="pu", ask="per unit", gt=1, le=3,
+        otherwise="of the kind, else it stands all",
+    )  # fmt: skip
     count: int = key("so many alike, switched together", ask="a whole number", default=1, ge=1, le=10000)
 
 

@@ -3,9 +3,10 @@
 from typing import Literal
 
 from relaycfg.files.keys import Form, Name, Pair, Text, key
-from relaycfg.model.geometry import three_phase
+from relaycfg.model.geometry import split_phase, three_phase
 
-LINES = len(three_phase().names)
+LINES = tuple(sorted(len(geometry.names) for geometry in (split_phase(), three_phase())))
+"""Fewest and most lines of a system; how many a site has is checked with its system."""
 EACH_LINE = f"[{', '.join(three_phase().names)}]"
 FeedFrom = Literal["auxiliary", "L1-N", "L2-N", "L3-N", "L1-L2", "L2-L3", "L3-L1"]
 
@@ -36,6 +37,9 @@ class RelayForm(Form):
     device: Name = key("file that describes the device", ask="the path of a device file")
     trips: Name | None = key("board whose incoming switch it opens", otherwise="measures_at")
     poles: Literal["lines and neutral", "lines"] | None = key("what that switch opens", row="default-relay-poles")
+    earth_reference: Literal["local PE", "own electrode"] | None = key(
+        "earth that N is measured against, with displacement_from n-to-earth", row="default-relay-earth-reference"
+    )
     supply: FeedForm = key("feed of the relay", default=FeedForm())
     trip_coil: TripCoilForm = key("feed and kind of the trip coil", default=TripCoilForm())
     output_s: float | None = key(
@@ -89,9 +93,11 @@ class SegmentForm(Form):
     """A piece of a case."""
 
     duration_s: float = key("how long", unit="s", ask="seconds", gt=0, le=86400)
-    l_n_v: list[float] = key("line-to-neutral volts", unit="V", ask=f"{EACH_LINE} in volts", length=LINES)
+    l_n_v: list[float] = key(
+        "line-to-neutral volts", unit="V", ask=f"{EACH_LINE} in volts", length=(LINES[0], LINES[-1])
+    )
     angle_deg: list[float] | None = key(
-        "their angles", unit="deg", ask=f"{EACH_LINE} in degrees", length=LINES,
+        "their angles", unit="deg", ask=f"{EACH_LINE} in degrees", length=(LINES[0], LINES[-1]),
         otherwise="those of the source, its neutral moved where the volts allow it",
     )  # fmt: skip
 

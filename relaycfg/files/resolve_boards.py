@@ -3,9 +3,10 @@
 from collections.abc import Sequence
 
 from relaycfg.files.ledger import Ledger
+from relaycfg.files.resolve_electrode import electrode
 from relaycfg.files.site_form import BoardForm, CableForm
 from relaycfg.files.tables import Tables
-from relaycfg.model.site import Board, Cable
+from relaycfg.model.site import Board, Cable, TouchTimes
 
 
 def resolve_board(form: BoardForm, frequency_hz: float, ledger: Ledger) -> Board:
@@ -14,14 +15,33 @@ def resolve_board(form: BoardForm, frequency_hz: float, ledger: Ledger) -> Board
     ledger.given(at + "fed_from", form.fed_from)
     if form.neutral_earth_link:
         ledger.given(at + "neutral_earth_link", True)
-    if form.electrode_ohm is not None:
-        ledger.given(at + "electrode_ohm", form.electrode_ohm, "ohm")
+    electrode_ohm = electrode(form.electrode_ohm, form.electrode, at, ledger)
     cable = form.cable
     resolved = None
     if cable is not None:
         by_ohms = cable.line_ohm is not None
         resolved = (_in_ohms if by_ohms else _by_section)(cable, frequency_hz, at + "cable.", ledger)
-    return Board(form.name, form.fed_from, resolved, form.neutral_earth_link, form.electrode_ohm)
+    limit = form.touch_limit_v
+    if limit is not None:
+        ledger.given(at + "touch_limit_v", limit, "V")
+    return Board(
+        form.name,
+        form.fed_from,
+        resolved,
+        form.neutral_earth_link,
+        electrode_ohm,
+        float(ledger.tables.row("touch-limit").value) if limit is None else limit,
+    )
+
+
+def resolve_touch(boards: Sequence[BoardForm], ledger: Ledger) -> TouchTimes:
+    """Times by touch voltage, as information; the limit enters the ledger once for all boards that state none."""
+    limit, times = ledger.tables.row("touch-limit"), ledger.tables.row("ev-annex-times")
+    silent = [form.name for form in boards if form.touch_limit_v is None]
+    ledger.shared_default("board.touch_limit_v", limit.value, "V", silent, limit.source, limit.status)
+    return TouchTimes(
+        tuple((v, s) for v, s in times.points), times.source, times.status, str(times.content["applies_to"])
+    )
 
 
 def resistance_20(section_mm2: float, metal: str, tables: Tables) -> tuple[float, str]:

@@ -145,9 +145,16 @@ def moved_neutral(l_n_v: list[float], geometry: Geometry) -> tuple[float, tuple[
     """Line-to-neutral phasors of those magnitudes behind a balanced source whose neutral has moved.
 
     Returns the source's own line-to-neutral volts and the phasors, or None where no balanced source gives them.
-    Source: own algebra; mean of the squares is EMF^2 + shift^2, differences of the squares give the shift.
+    Source: own algebra; mean of the squares is EMF^2 + shift^2, differences of the squares give the shift. The legs of
+    one winding share the volts between them where the neutral has moved along the line from one to the other, as it
+    does with loads of one angle. Two lines of a star leave the source and the shift open: None.
     """
     units = [complex(u) for u in geometry.phasors]
+    if not geometry.has_displacement:
+        return None
+    if not geometry.has_sequences:
+        emf = sum(l_n_v) / len(units)
+        return emf, tuple(v * u for v, u in zip(l_n_v, units, strict=True))
     mean = sum(v * v for v in l_n_v) / len(units)
     reach = sum(u * (mean - v * v) for u, v in zip(units, l_n_v, strict=True)) / len(units)
     root = mean * mean - 4 * abs(reach) ** 2

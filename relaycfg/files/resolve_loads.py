@@ -2,7 +2,7 @@
 
 import math
 from collections.abc import Callable, Iterable
-from typing import cast
+from typing import Any, cast
 
 from relaycfg.files.draft import Entry, PlacedLoad
 from relaycfg.files.ledger import Ledger, printed
@@ -12,6 +12,10 @@ from relaycfg.model.geometry import Geometry
 from relaycfg.model.site import Load, Motor, Supply, Tag
 
 Three = tuple[float, float, float]
+LIMITS = ("cutout_pu", "restart_s", "damage_pu")
+"""Keys of a load, and of a row of its kind, that say what its volts do to it."""
+STALLING = ("air conditioner", "refrigerator", "heat-pump water heater")
+"""Kinds with a single-phase compressor inside, by the meaning of their names."""
 
 
 def lines_of(between: str, geometry: Geometry) -> tuple[tuple[int, ...], bool]:
@@ -34,6 +38,7 @@ class LoadResolver:
         self.supply, self.ledger = supply, ledger
         self.omitted: dict[str, list[str]] = {}
         self.kinds: dict[str, Row] = {}
+        self.of_kind: dict[tuple[str, str], Row] = {}
         self.group_usage = {p.form.group: p.form.usage for p in loads if p.form.group and p.form.usage is not None}
         self.loads = tuple(self._load(placed) for placed in loads)
         self._enter_kinds()
@@ -67,6 +72,7 @@ class LoadResolver:
         words += [f"band {printed(form.band_pu)} pu"] if form.band_pu is not None else []
         words += [f"third harmonic {third:g} %"] if form.third_harmonic_percent is not None else []
         words += ["minds low volts"] if form.minds_low_v else []
+        words += [f"{n.partition('_')[0]} {v:g} {n.partition('_')[2]}" for n in LIMITS if (v := getattr(form, n))]
         words += [f"{form.count} alike"] if form.count > 1 else []
         words += [f"group {form.group}"] if form.group else []
         tag = cast(Tag, placed.evidence or "assumed")
@@ -76,7 +82,29 @@ class LoadResolver:
             p_w=power.real * form.count, q_var=power.imag * form.count, zip_p=zip_p, zip_q=zip_q,
             band_low_pu=band[0], band_high_pu=band[1], usage=usage, demand=demand, group=form.group,
             minds_low_v=form.minds_low_v, third_harmonic_percent=third, kind=kind_name,
+            **self._limits(form, kind), **self._stall(kind, len(lines), abs(power) * form.count),
         )  # fmt: skip
+
+    def _limits(self, form: LoadForm, kind: Row | None) -> dict[str, Any]:
+        """Cut-out, restart and damage: the user's, else of the kind, else none."""
+        found = {}
+        for limit in LIMITS:
+            found[limit] = getattr(form, limit)
+            if found[limit] is None and kind is not None and limit in kind.content:
+                found[limit] = float(kind.content[limit])
+                self.of_kind[limit, kind.id] = kind
+        return found
+
+    def _stall(self, kind: Row | None, lines: int, rated_va: float) -> dict[str, Any]:
+        """Single-phase loads of the kinds that stall: below which volts, and what they then take of their rating."""
+        tables = self.ledger.tables
+        if kind is None or lines > 2 or rated_va == 0 or kind.name not in STALLING:
+            return {}
+        ratios = tables.row("stall-after").values
+        stalled = rated_va * complex(ratios["p_ratio"], ratios["q_ratio"])
+        row = tables.row("stall")
+        self.of_kind["stall", kind.id] = kind
+        return {"stall_pu": float(row.values["usual_pu"]), "stalled_va": stalled}
 
     def _kind(self, form: LoadForm, name: str) -> Row | None:
         """The table row of the load's kind; None where it brings its own law."""
@@ -128,6 +156,11 @@ class LoadResolver:
         for row in self.kinds.values():
             value = printed(_to_one(row.values["zip_p"]))
             self.ledger.given(f"load.*.zip_p of {row.name}", value, "", row.source, status=row.status)
+        for (key, _), row in self.of_kind.items():
+            behind = self.ledger.tables.row("stall") if key == "stall" else row
+            value, unit = behind.values["usual_pu"] if key == "stall" else row.content[key], key.rpartition("_")[2]
+            field = f"load.*.{key} of {row.name}"
+            self.ledger.given(field, value, "pu" if key == "stall" else unit, behind.source, status=behind.status)
 
     def _enter_defaults(self) -> None:
         for key_row, owners in self.omitted.items():
@@ -171,10 +204,11 @@ def resolve_motors(entries: list[Entry[MotorForm]], supply: Supply, ledger: Ledg
         running = complex(watts, watts * math.tan(math.acos(pf)))
         starting = abs(running) * ratio * complex(start_pf, math.sin(math.acos(start_pf)))
         lines, to_neutral = lines_of(form.between, supply.geometry)
+        stall_pu = float(ledger.tables.row("stall").values["usual_pu"]) if len(lines) < 3 else None
         shaft_w = form.shaft_kw * 1000
         names = [name] if form.count == 1 else [f"{name} {i}" for i in range(1, form.count + 1)]
         motors.extend(
-            Motor(n, form.board, form.between, lines, to_neutral, shaft_w, running, starting, seconds, usage)
+            Motor(n, form.board, form.between, lines, to_neutral, shaft_w, running, starting, seconds, usage, stall_pu)
             for n in names
         )
     return tuple(motors)

@@ -5,9 +5,11 @@ from relaycfg.files.device_form import DeviceForm
 from relaycfg.files.ledger import Ledger
 from relaycfg.files.relay_form import EquipmentForm, FeedForm, RelayForm
 from relaycfg.files.tables import Row, Tables
-from relaycfg.model.site import Equipment, Feed, Relay, Supply
+from relaycfg.model.site import EarthReference, Equipment, Feed, Relay, Supply
 
 Steps = tuple[tuple[float, float], ...]
+SMALL_NOMINAL_V = 150.0
+"""Above it a supply is none of the 120 V kind that some curves are made for."""
 
 
 def resolve_relay(form: RelayForm, device: DeviceForm, supply: Supply, ledger: Ledger, warnings: list[str]) -> Relay:
@@ -32,7 +34,23 @@ def resolve_relay(form: RelayForm, device: DeviceForm, supply: Supply, ledger: L
             at + "coil_and_breaker_s", form.coil_and_breaker_s, "default-relay-breaker", "s"
         ),
         dead_bus_pu=ledger.tables.row("own-dead-bus").value,
+        earth_reference=_earth_reference(form, device, at, ledger, warnings),
     )
+
+
+def _earth_reference(
+    form: RelayForm, device: DeviceForm, at: str, ledger: Ledger, warnings: list[str]
+) -> EarthReference:
+    """The earth N is measured against; a device that forms displacement from its lines has no use for one."""
+    row = "default-relay-earth-reference"
+    if device.displacement_from == "n-to-earth":
+        chosen: EarthReference = ledger.pick(at + "earth_reference", form.earth_reference, row)
+        return chosen
+    if form.earth_reference is not None:
+        warnings.append(
+            f"Relay {form.name}: earth_reference has no effect, its device takes displacement from the lines."
+        )
+    return "local PE"
 
 
 def _feed(form: FeedForm, at: str, ledger: Ledger) -> Feed:
@@ -61,6 +79,11 @@ def resolve_equipment(form: EquipmentForm, nominal_v: float, ledger: Ledger, war
             warnings.append(
                 f"Equipment: the {row.name} is given for {base:g} V; its volts are scaled to {nominal_v:g} V, "
                 "which no source states. Give [equipment] points of your own."
+            )
+        if row.family == "withstand-curves" and "120 V" in row.name and nominal_v > SMALL_NOMINAL_V:
+            warnings.append(
+                f'Equipment: the curve "{row.name}" says what works through on 120 V; at {nominal_v:g} V it is no '
+                "limit of damage. Give [equipment] points of your own."
             )
         if form.overvoltage is not None:
             ledger.given(at + "overvoltage", name, note=source, status=status)
@@ -130,5 +153,5 @@ def _low_seconds(form: EquipmentForm, low: Steps, ledger: Ledger) -> float:
         return low[0][1]
     row = ledger.tables.row("iti-lower")
     percent, seconds = row.points[-1]
-    ledger.default("equipment.sustained_low_s", seconds, "s", f"{percent:g} % of {row.source}", row.status)
+    ledger.default("equipment.sustained_low_s", seconds, "s", f"{percent:g} % of {row.source}, for 120 V", row.status)
     return seconds

@@ -4,9 +4,10 @@ import math
 
 from relaycfg.files.cross_checks import vector_family
 from relaycfg.files.ledger import Ledger
+from relaycfg.files.resolve_electrode import electrode
 from relaycfg.files.site_form import SourceForm, SupplyForm
 from relaycfg.files.tables import Row, Tables, is_50_hz
-from relaycfg.model.geometry import Geometry, three_phase
+from relaycfg.model.geometry import Geometry, geometry_of, split_phase
 from relaycfg.model.site import Source, Supply
 
 
@@ -16,10 +17,10 @@ def resolve_supply(form: SupplyForm, ledger: Ledger) -> Supply:
     ledger.given("supply.nominal_v", form.nominal_v, "V")
     ledger.given("supply.earthing", form.earthing)
     frequency = ledger.pick("supply.frequency_hz", form.frequency_hz, "default-supply-frequency", "Hz")
-    order = ledger.pick("supply.phase_order", form.phase_order, "default-supply-phase-order")
+    geometry = _geometry(form, ledger)
     low, high, name, source, status = _band(form, frequency, ledger)
     return Supply(
-        geometry=three_phase(order),
+        geometry=geometry,
         nominal_v=form.nominal_v,
         frequency_hz=frequency,
         earthing=form.earthing,
@@ -29,11 +30,26 @@ def resolve_supply(form: SupplyForm, ledger: Ledger) -> Supply:
         band_source=source,
         band_status=status,
         band_at=ledger.pick("supply.band_at", form.band_at, "default-supply-band-at"),
-        unbalance_percent=ledger.pick("supply.unbalance_percent", form.unbalance_percent, "en-50160-unbalance", "%"),
+        unbalance_percent=_unbalance(form, geometry, ledger),
         displacement_percent=ledger.pick(
             "supply.displacement_percent", form.displacement_percent, "default-supply-displacement", "%"
         ),
     )
+
+
+def _geometry(form: SupplyForm, ledger: Ledger) -> Geometry:
+    """The lines; the legs of one winding have no order that could be given."""
+    if form.system == "1ph-3w":
+        return split_phase()
+    return geometry_of(form.system, ledger.pick("supply.phase_order", form.phase_order, "default-supply-phase-order"))
+
+
+def _unbalance(form: SupplyForm, geometry: Geometry, ledger: Ledger) -> float:
+    """V2/V1 of the network [%]; none behind one winding, whose legs differ by displacement alone."""
+    if not geometry.of_star:
+        return 0.0
+    row = "en-50160-unbalance"
+    return float(ledger.pick("supply.unbalance_percent", form.unbalance_percent, row, "%"))
 
 
 def band_percent(row: Row) -> tuple[float, float]:
@@ -83,7 +99,7 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
         line_ohm=line,
         neutral_ohm=neutral,
         star_link_ohm=ledger.pick(at + "star_link_ohm", form.star_link_ohm, "default-source-star-link", "ohm"),
-        electrode_ohm=ledger.pick(at + "electrode_ohm", form.electrode_ohm, "default-source-electrode", "ohm"),
+        electrode_ohm=_electrode(form, at, ledger),
         earth_at=ledger.pick(at + "earth_at", form.earth_at, "default-source-earth-at"),
         step_dip_percent=steps[0],
         step_rise_percent=steps[1],
@@ -94,12 +110,20 @@ def resolve_source(form: SourceForm, supply: Supply, ledger: Ledger) -> Source:
     )
 
 
-def series_ohm(percent: float, rating_kva: float, line_to_line_v: float, x_over_r: float) -> complex:
-    """Series impedance of a transformer or machine [ohm] on the side of ``line_to_line_v``.
+def _electrode(form: SourceForm, at: str, ledger: Ledger) -> float | None:
+    """Ohms of the source's electrode: as given, of its rods, or the default."""
+    if form.electrode is None and form.electrode_ohm is None:
+        return float(ledger.pick(at + "electrode_ohm", None, "default-source-electrode", "ohm"))
+    return electrode(form.electrode_ohm, form.electrode, at, ledger)
 
-    Source: Z = u U^2 / S with X/R, own arithmetic. Valid for x_over_r above 0.
+
+def series_ohm(percent: float, rating_kva: float, base_v: float, x_over_r: float) -> complex:
+    """Series impedance of each line of a transformer or machine [ohm] at its base volts.
+
+    Source: Z = u U^2 / S with X/R, own arithmetic; U is the line-to-line voltage for three lines, 120 sqrt 2 V for
+    the two legs of 120/240 V (half of the whole winding's impedance each). Valid for x_over_r above 0.
     """
-    ohm = percent / 100 * line_to_line_v**2 / (rating_kva * 1000)
+    ohm = percent / 100 * base_v**2 / (rating_kva * 1000)
     resistance = ohm / math.hypot(1, x_over_r)
     return complex(resistance, resistance * x_over_r)
 
@@ -121,9 +145,17 @@ def zero_sequence(line: complex, family: str, tables: Tables) -> tuple[complex, 
 def star_neutral_ohm(line: complex, zero: complex, geometry: Geometry) -> complex:
     """Impedance from the star of the EMFs to the star point [ohm], of the sequence impedances Z1 and Z0.
 
-    Source: symmetrical components, Z0 = Z1 + n Z_N for n lines that share the neutral.
+    Source: symmetrical components, Z0 = Z1 + n Z_N for n windings that share the neutral. Valid for two legs of one
+    winding too (own algebra): Z0 is what both legs meet with equal currents into the neutral.
     """
-    return (zero - line) / len(geometry.names)
+    return (zero - line) / geometry.windings
+
+
+def centre_tap_zero(line: complex, tables: Tables) -> tuple[complex, str, str]:
+    """Z0 [ohm] of a centre-tapped winding, of the impedance of one leg, with source and status."""
+    row = tables.row("zero-sequence-centre-tap")
+    zero = complex(line.real * row.values["r0_ratio"], line.imag * row.values["x0_ratio"])
+    return zero, row.source, row.status
 
 
 def _transformer(form: SourceForm, emf: float, geometry: Geometry, at: str, ledger: Ledger) -> tuple[complex, complex]:
@@ -147,12 +179,15 @@ def _transformer(form: SourceForm, emf: float, geometry: Geometry, at: str, ledg
         ledger.default(at + "x_over_r", x_over_r, "", note, row.status)
     else:
         ledger.given(at + "x_over_r", x_over_r)
-    line = series_ohm(percent, form.rating_kva, emf * geometry.line_to_line_ratio, x_over_r)
+    line = series_ohm(percent, form.rating_kva, emf * geometry.base_ratio, x_over_r)
     if form.zero_sequence_ratio is not None:
         if form.vector_group is not None:
             ledger.given(at + "vector_group", form.vector_group, note="zero_sequence_ratio goes first")
         ledger.given(at + "zero_sequence_ratio", form.zero_sequence_ratio)
         zero = line * form.zero_sequence_ratio
+    elif not geometry.of_star:
+        zero, source, status = centre_tap_zero(line, tables)
+        ledger.default(at + "zero_sequence_ratio", abs(zero / line), "", source, status)
     else:
         group = ledger.pick(at + "vector_group", form.vector_group, "default-source-vector-group")
         zero, source, status = zero_sequence(line, vector_family(group) or "dyn", tables)
@@ -165,7 +200,7 @@ def _generator(form: SourceForm, emf: float, geometry: Geometry, at: str, ledger
     ledger.given(at + "rating_kva", form.rating_kva, "kVA")
     percent = ledger.pick(at + "reactance_percent", form.reactance_percent, "default-generator-reactance", "%")
     ratio = ledger.pick(at + "x_over_r", form.x_over_r, "default-generator-x-over-r")
-    reactance = percent / 100 * (emf * geometry.line_to_line_ratio) ** 2 / (form.rating_kva * 1000)
+    reactance = percent / 100 * (emf * geometry.base_ratio) ** 2 / (form.rating_kva * 1000)
     return complex(reactance / ratio, reactance), _neutral(form, at, ledger)
 
 

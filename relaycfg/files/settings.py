@@ -53,7 +53,10 @@ def read_settings(path: Path, site: Site) -> Settings:
         )
         raise InputError(problems)
     if form.for_relay != relay.name:
-        problems.append(file.problem(("for_relay",), f'"{form.for_relay}"', choose(form.for_relay, (relay.name,))))
+        other = form.for_relay in [r.name for r in site.relays]
+        given = f'"{form.for_relay}"' + (f", and {relay.name} is judged" if other else "")
+        remedy = f'add --relay "{form.for_relay}"' if other else choose(form.for_relay, (relay.name,))
+        problems.append(file.problem(("for_relay",), given, remedy))
     if form.device != relay.device.name:
         given = f'"{form.device}", not the device of {relay.name}'
         problems.append(file.problem(("device",), given, f'give settings of "{relay.device.name}"'))
@@ -72,6 +75,7 @@ def read_settings(path: Path, site: Site) -> Settings:
         inhibit_s=form.start_up.inhibit_s,
         after_any_trip=form.reconnect.after_any_trip,
         reconnect_delay_s=form.reconnect.delay_s,
+        reconnect_attempts=form.reconnect.attempts,
     )
 
 
@@ -156,6 +160,8 @@ def settings_text(settings: Settings, site: Site, comments: dict[str, str] | Non
     lines += ["", "[reconnect]", f"after_any_trip = {_text(settings.after_any_trip)}"]
     if settings.reconnect_delay_s:
         lines.append(f"delay_s = {settings.reconnect_delay_s!r}")
+    if settings.reconnect_attempts is not None:
+        lines.append(f"attempts = {settings.reconnect_attempts}")
     return "\n".join(lines) + "\n"
 
 

@@ -60,6 +60,9 @@ class ReconnectForm(Form):
 
     after_any_trip: Literal["by hand", "automatic"] = key("how the switch closes again", default="by hand")
     delay_s: float = key("automatic: after volts are back for", unit="s", ask="seconds", default=0.0, ge=0, le=3600)
+    attempts: int | None = key(
+        "automatic: closings until it locks out", ask="a whole number", ge=1, le=100, otherwise="without limit"
+    )
 
 
 class SettingsForm(Form):

@@ -9,14 +9,14 @@ from pathlib import Path
 from typing import Any
 
 from relaycfg.errors import InputError, Problem
-from relaycfg.files.cross_checks import cross_check
+from relaycfg.files.cross_checks import cross_check, star_voltage
 from relaycfg.files.device import read_device
 from relaycfg.files.device_form import DeviceForm
-from relaycfg.files.draft import Draft, PlacedLoad, draft_site, placed_loads
+from relaycfg.files.draft import Draft, Entry, PlacedLoad, draft_site, placed_loads
 from relaycfg.files.ledger import Ledger
 from relaycfg.files.limits import CONNECTED_TIMES
-from relaycfg.files.relay_form import EquipmentForm, MustHoldForm
-from relaycfg.files.resolve_boards import resolve_board
+from relaycfg.files.relay_form import EquipmentForm, MustHoldForm, RelayForm
+from relaycfg.files.resolve_boards import resolve_board, resolve_touch
 from relaycfg.files.resolve_cases import resolve_case, resolve_faults, resolve_reference
 from relaycfg.files.resolve_judgement import resolve_judgement
 from relaycfg.files.resolve_loads import LoadResolver, resolve_motors
@@ -46,20 +46,22 @@ def read_site(path: Path | None, *, text: str | None = None, need_relay: bool = 
     loads = placed_loads(draft)
     tables = Tables()
     cross_check(draft, loads, tables, need_relay)
-    device = None
-    if draft.relays:
-        relay = draft.relays[0]
-        key = (*relay.loc, "device")
-        device = read_device(
-            draft.folder, relay.form.device, draft.problems, lambda given, remedy: draft.problem(key, given, remedy)
-        )
+    devices = [_device(draft, relay) for relay in draft.relays]
     if draft.problems:
         raise InputError(_ordered(draft.problems, shown))
-    site = _resolve(draft, loads, device, tables)
+    site = _resolve(draft, loads, [device for device in devices if device is not None], tables)
     if draft.problems:
         raise InputError(_ordered(draft.problems, shown))
     own = () if path is None else (str(path),)
     return replace(site, files=(*own, *_named(draft)))
+
+
+def _device(draft: Draft, relay: Entry[RelayForm]) -> tuple[TomlFile, DeviceForm] | None:
+    """The device file of one relay; what is wrong with naming it is a problem of the site."""
+    key = (*relay.loc, "device")
+    return read_device(
+        draft.folder, relay.form.device, draft.problems, lambda given, remedy: draft.problem(key, given, remedy)
+    )
 
 
 def _named(draft: Draft) -> tuple[str, ...]:
@@ -74,26 +76,28 @@ def _ordered(problems: list[Problem], first_file: str) -> list[Problem]:
     return sorted(unique, key=lambda p: (p.file != first_file, p.file, p.line or sys.maxsize, p.column or 0))
 
 
-def _resolve(draft: Draft, loads: list[PlacedLoad], device: tuple[TomlFile, DeviceForm] | None, tables: Tables) -> Site:
+def _resolve(draft: Draft, loads: list[PlacedLoad], devices: list[tuple[TomlFile, DeviceForm]], tables: Tables) -> Site:
     assert draft.supply is not None
     ledger = Ledger(tables)
     warnings: list[str] = []
     supply = resolve_supply(draft.supply, ledger)
     source = resolve_source(draft.sources[0].form, supply, ledger)
     boards = tuple(resolve_board(e.form, supply.frequency_hz, ledger) for e in draft.boards)
+    touch = resolve_touch([e.form for e in draft.boards], ledger)
     resolved_loads = LoadResolver(supply, ledger, loads).loads
     motors = resolve_motors(draft.motors, supply, ledger)
     faults = resolve_faults(draft, boards, supply, ledger)
-    relay = None
-    if device is not None:
-        relay = resolve_relay(draft.relays[0].form, device[1], supply, ledger, warnings)
+    relays = tuple(
+        resolve_relay(entry.form, device, supply, ledger, warnings)
+        for entry, (_, device) in zip(draft.relays, devices, strict=True)
+    )
     equipment = resolve_equipment(draft.equipment or EquipmentForm(), supply.nominal_v, ledger, warnings)
     reference = resolve_reference(draft.must_hold or MustHoldForm(), supply, ledger)
     cases = tuple(resolve_case(e.form, supply, ledger, warnings) for e in draft.cases)
     inputs, stray = ledger.tagged((e.loc, e.form) for e in draft.evidence)
     for loc, given, remedy in stray:
         draft.add((*loc, "of"), f"{given}, no given input", remedy)
-    warnings.extend(_warnings(draft))
+    warnings.extend(_warnings(draft, supply))
     warnings.extend(_low_side(resolved_loads, equipment))
     warnings.extend(_amounts(draft, loads, resolved_loads, motors))
     if not _unbalances(resolved_loads, motors, supply):
@@ -106,14 +110,16 @@ def _resolve(draft: Draft, loads: list[PlacedLoad], device: tuple[TomlFile, Devi
         loads=resolved_loads,
         motors=motors,
         faults=faults,
-        relay=relay,
+        relay=relays[0] if relays else None,
+        relays=relays,
         equipment=equipment,
         reference=reference,
         user_cases=cases,
         inputs=tuple(inputs),
         warnings=tuple(warnings),
         judgement=resolve_judgement(tables),
-        digest=_digest(draft, loads, device[0] if device else None, tables),
+        touch=touch,
+        digest=_digest(draft, loads, [dict(file.data) for file, _ in devices], tables),
     )
 
 
@@ -129,9 +135,14 @@ def _document(form: DocumentForm) -> Document:
     )  # fmt: skip
 
 
-def _warnings(draft: Draft) -> list[str]:
+def _warnings(draft: Draft, supply: Supply) -> list[str]:
     """What is computed as written but deserves a look."""
-    found = []
+    found = _between_legs(supply)
+    if "95 percent" in supply.band_name:
+        found.append(
+            f"Supply: {supply.band_name} holds for 95 percent of the ten-minute means of a week, not for ever; a sound "
+            "supply may leave it. The band of all means is the one to ride through."
+        )
     earthing = draft.supply.earthing if draft.supply else ""
     for entry in draft.boards:
         cable = entry.form.cable
@@ -145,7 +156,7 @@ def _warnings(draft: Draft) -> list[str]:
             found.append(f"Board {name}: an N-PE link in a TN-S system joins N and PE a second time.")
         if earthing == "TT" and has_pe and entry.form.fed_from == SOURCE:
             found.append(f"Board {name}: its cable carries the PE of the source, so the system is not TT.")
-    if earthing == "TT" and not any(e.form.electrode_ohm for e in draft.boards):
+    if earthing == "TT" and not any(e.form.electrode_ohm or e.form.electrode for e in draft.boards):
         found.append("TT system without an electrode at any board: metalwork has no path to earth in the model.")
     for relay in draft.relays:
         trips, name = relay.form.trips or relay.form.measures_at, relay.form.measures_at
@@ -158,6 +169,19 @@ def _warnings(draft: Draft) -> list[str]:
             at = relay.form.measures_at
             found.append(f"Relay {relay.form.name}: it measures at {at}, which {trips} does not feed.")
     return found
+
+
+def _between_legs(supply: Supply) -> list[str]:
+    """A split-phase supply whose nominal volts would be the usual ones between its legs."""
+    geometry, tables = supply.geometry, Tables()
+    leg_v = star_voltage(supply.nominal_v / geometry.line_to_line_ratio, tables)
+    if geometry.of_star or leg_v is None:
+        return []
+    between_v = supply.nominal_v * geometry.line_to_line_ratio
+    return [
+        f"Supply: {supply.nominal_v:g} V from line to neutral is {between_v:g} V between the legs; if "
+        f"{supply.nominal_v:g} V is read between them, nominal_v is {leg_v:g}."
+    ]
 
 
 def _low_side(loads: tuple[Load, ...], equipment: Equipment) -> list[str]:
@@ -201,14 +225,16 @@ def _unbalances(loads: tuple[Load, ...], motors: tuple[Motor, ...], supply: Supp
     return any(x.to_neutral and len(x.lines) < every and x.usage > 0 for x in takers)
 
 
-def _digest(draft: Draft, loads: list[PlacedLoad], device: TomlFile | None, tables: Tables) -> str:
+def _digest(draft: Draft, loads: list[PlacedLoad], devices: list[dict[str, Any]], tables: Tables) -> str:
     """sha256 over parsed content, so that line ends, comments and platforms do not matter; [document] is left out."""
     content: dict[str, Any] = {
         "site": {name: table for name, table in draft.file.data.items() if name != "document"},
         "loads": [{**p.form.model_dump(), "name": p.name, "evidence": p.evidence} for p in loads],
-        "device": device.data if device is not None else None,
+        "device": devices[0] if devices else None,
         "tables": {row_id: dict(tables.used[row_id].content) for row_id in sorted(tables.used)},
     }
+    if len(devices) > 1:
+        content["further_devices"] = devices[1:]
     return "sha256:" + hashlib.sha256(json.dumps(content, sort_keys=True, default=_plain).encode()).hexdigest()
 
 

@@ -3,10 +3,12 @@
 import datetime
 from typing import Literal
 
+from relaycfg.files.electrode_form import ElectrodeForm
 from relaycfg.files.keys import OHMS, Form, Name, OwnName, Pair, Text, key
 from relaycfg.files.limits import NOMINAL_V
 from relaycfg.files.load_form import FaultForm, LoadForm, LoadsForm, MotorForm
 from relaycfg.files.relay_form import CaseForm, EquipmentForm, MustHoldForm, RelayForm
+from relaycfg.model.geometry import System
 
 
 class PersonForm(Form):
@@ -38,7 +40,10 @@ class DocumentForm(Form):
 class SupplyForm(Form):
     """What the supply promises."""
 
-    system: Literal["3ph-4w", "1ph-3w", "2ph-3w"] = key("kind of system; only 3ph-4w yet", default="3ph-4w")
+    system: System = key(
+        "lines and neutral of a star with three; split phase (two legs of one winding); two lines of a star",
+        default="3ph-4w",
+    )
     nominal_v: float = key(
         "nominal voltage, line to neutral",
         unit="V",
@@ -63,7 +68,12 @@ class SupplyForm(Form):
     )
     band_at: Name | None = key("where the band is promised: source or a board", row="default-supply-band-at")
     unbalance_percent: float | None = key(
-        "V2/V1 there, inside the band", unit="%", ask="percent", ge=0, le=10, row="en-50160-unbalance"
+        "V2/V1 there, inside the band; not for 1ph-3w",
+        unit="%",
+        ask="percent",
+        ge=0,
+        le=10,
+        row="en-50160-unbalance",
     )
     displacement_percent: float | None = key(
         "V0/V1 there, from the network upstream", unit="%", ask="percent", ge=0, le=20,
@@ -119,6 +129,7 @@ class SourceForm(Form):
     electrode_ohm: float | None = key(
         "earth electrode of the source", unit="ohm", ask="ohms", gt=0, le=10000, row="default-source-electrode"
     )
+    electrode: ElectrodeForm | None = key("its rods and soil, instead of electrode_ohm", default=None)
     earth_at: Literal["neutral-bar", "star-point"] | None = key(
         "side of the star link that carries electrode and PE", row="default-source-earth-at"
     )
@@ -163,6 +174,11 @@ class BoardForm(Form):
     electrode_ohm: float | None = key(
         "own earth electrode on its PE", unit="ohm", ask="ohms", gt=0, le=10000, otherwise="none"
     )
+    electrode: ElectrodeForm | None = key("its rods and soil, instead of electrode_ohm", default=None)
+    touch_limit_v: float | None = key(
+        "touch voltage that may stay at what it feeds; 25 where it is wet", unit="V", ask="volts", gt=0, le=120,
+        row="touch-limit",
+    )  # fmt: skip
     cable: CableForm | None = key("incoming cable; without it the board is the node of its feeder", default=None)
 
 
@@ -185,7 +201,7 @@ class SiteForm(Form):
     load: list[LoadForm] = key("loads", default=[])
     motor: list[MotorForm] = key("motors", default=[])
     fault: list[FaultForm] = key("short circuits; none: assumed from the disconnection times", default=[])
-    relay: list[RelayForm] = key("the relay; one", default=[])
+    relay: list[RelayForm] = key("the relays; the first is the one studied", default=[])
     equipment: EquipmentForm = key("what equipment stands", default=EquipmentForm())
     must_hold: MustHoldForm = key("reference disturbances", default=MustHoldForm())
     case: list[CaseForm] = key("own cases", default=[])

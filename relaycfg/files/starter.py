@@ -17,22 +17,24 @@ from relaycfg.files.schema import site_schema
 from relaycfg.files.tables import Tables
 from relaycfg.files.text import TomlFile
 from relaycfg.files.writing import check_new, write_new
-from relaycfg.model.geometry import three_phase
+from relaycfg.model.geometry import System, geometry_of
 
 SCHEMA = "site.schema.json"
 BASE_V = 230.0
 """Voltage for which the figures of the templates are written."""
 MAIN, SECOND = "MB", "Workshop"
+AMERICAN_V = 120.0
+"""Leg-to-neutral voltage whose usual band has a name."""
 CYCLES_60 = (120.0, 127.0, 277.0)
 """Star voltages that are usual at 60 Hz only; every other starter is one of 50 Hz."""
 NO_LOAD_PU = 1.02
 """A tap set a little high, as is usual."""
-OVER_PU, UNDER_PU = (1.0, 1.8), (0.3, 1.0)
+ABOVE_BETWEEN, UNDER_PU = 1.04, (0.3, 1.0)
 """Knobs of 59 from nominal to just above the line-to-line voltage, of 27 from deep dips up to nominal."""
 SHIFT_PU = (0.02, 0.6)
 """Knob of 59N from the standing displacement to a neutral that stands on a line, nearly."""
-FEED_PU = (1.3, 2.0)
-"""Range of a relay fed between lines: a fifth to a quarter around the line-to-line voltage."""
+FEED_PU = (0.75, 1.155)
+"""Range of a relay fed between lines, around the line-to-line voltage."""
 SUSTAINED_LOW_PU = 0.8
 """What motors are usually said to stand for long."""
 CHANNEL_PERCENT = 1.0
@@ -40,7 +42,12 @@ CHANNEL_PERCENT = 1.0
 
 
 def write_starter(
-    folder: Path, volts: float = 230.0, earthing: str = "TN-S", loads_file: Path | None = None, force: bool = False
+    folder: Path,
+    volts: float = 230.0,
+    earthing: str = "TN-S",
+    loads_file: Path | None = None,
+    force: bool = False,
+    system: System = "3ph-4w",
 ) -> tuple[Path, ...]:
     """Writes site.toml, loads, relay.toml and the JSON Schema into ``folder``, made where it is not there.
 
@@ -48,10 +55,14 @@ def write_starter(
     InputError, before anything is written, for bad arguments or files that are there already.
     """
     boards, loads_name, loads = [MAIN, SECOND], "loads.csv", b""
-    _check(volts, earthing)
+    _check(volts, earthing, system)
     if loads_file is not None:
         boards, loads_name, loads = _own_loads(loads_file)
-    figures = {**_figures(volts, earthing), "boards": boards, "loads_file": json.dumps(loads_name, ensure_ascii=False)}
+    figures = {
+        **_figures(volts, earthing, system),
+        "boards": boards,
+        "loads_file": json.dumps(loads_name, ensure_ascii=False),
+    }
     if loads_file is not None:
         _check_loads(loads_file, figures)
     texts: dict[str, bytes] = {"site.toml": _render("site.toml.j2", figures)}
@@ -86,10 +97,10 @@ def _to_write(folder: Path, names: tuple[str, ...], own: str, loads_file: Path |
     return names
 
 
-def _check(volts: float, earthing: str) -> None:
+def _check(volts: float, earthing: str, system: System) -> None:
     if earthing not in ("TN-S", "TN-C-S", "TT"):
         raise _bad("--earthing", f'"{earthing}"', "give TN-S, TN-C-S or TT")
-    star = meant_star_voltage(volts, Tables())
+    star = meant_star_voltage(volts, Tables(), geometry_of(system))
     if star is not None:
         looks = f"{volts:g}, which looks like a line-to-line voltage"
         raise _bad("--volts", looks, f"give volts from line to neutral, {star:g}")
@@ -117,29 +128,38 @@ def _check_loads(path: Path, figures: dict[str, Any]) -> None:
         raise InputError(draft.problems)
 
 
-def _figures(volts: float, earthing: str) -> dict[str, Any]:
+def _figures(volts: float, earthing: str, system: System) -> dict[str, Any]:
     """Voltages of the templates at the site's nominal voltage."""
     scale = volts / BASE_V
     low, high = Tables().row("default-equipment-nominal-range").value
     curve = Tables().row("household-overvoltage-break-times")
-    line_to_line = volts * three_phase().line_to_line_ratio
-    shift_error = displacement_share(three_phase()) * CHANNEL_PERCENT / 100 * volts
+    geometry = geometry_of(system)
+    between_pu = geometry.line_to_line_ratio
+    shift_error = displacement_share(geometry) * CHANNEL_PERCENT / 100 * volts
+    share = displacement_share(geometry)
     return {
+        "system": system,
+        "lines": len(geometry.names),
+        "of_star": geometry.of_star,
+        "has_displacement": geometry.has_displacement,
+        "between": f"{between_pu:.3g} times line to neutral",
+        "share": "2/3" if system == "3ph-4w" else f"{share:g}",
         "volts": volts,
-        "line_to_line": round(line_to_line),
+        "line_to_line": round(volts * between_pu),
         "earthing": earthing,
         "scale": scale,
         "frequency": 60 if volts in CYCLES_60 else 50,
         "named_band": volts == BASE_V,
+        "american_band": system != "3ph-4w" and volts == AMERICAN_V,
         "no_load": round(NO_LOAD_PU * volts, 1),
         "named_curve": low <= volts <= high,
         "points": [[round(v * scale), s] for v, s in curve.points],
         "sustained": round(curve.content["sustained_v"] * scale, 1),
         "sustained_low": round(SUSTAINED_LOW_PU * volts),
-        "high": [round(pu * volts) for pu in OVER_PU],
+        "high": [round(pu * volts) for pu in (1.0, ABOVE_BETWEEN * between_pu)],
         "low": [round(pu * volts) for pu in UNDER_PU],
         "shift": [round(2 * pu * volts) / 2 for pu in SHIFT_PU],
-        "coil": [round(pu * volts) for pu in FEED_PU],
+        "coil": [round(pu * between_pu * volts) for pu in FEED_PU],
         "channel_percent": f"{CHANNEL_PERCENT:g}",
         "shift_error": math.ceil(10 * shift_error) / 10,
     }

@@ -1,9 +1,13 @@
 """What a lost neutral does, as plain figures: single states as rows, places over all states."""
 
 from dataclasses import dataclass
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 from relaycfg.model.device import Function
+
+if TYPE_CHECKING:
+    from relaycfg.model.joint_results import JointSweep
+    from relaycfg.model.place_results import HighestVoltage
 
 Status = Literal["converged", "unresolved"]
 Flag = Literal["below band", "above band", "unstable", "several solutions"]
@@ -26,18 +30,22 @@ class BoardVolts:
 
 @dataclass(frozen=True)
 class RelayVolts:
-    """What the relay's terminals carry in one state [V]; unbalance in percent by definition name."""
+    """What the relay's terminals carry in one state [V]; unbalance in percent by definition name.
+
+    ``n_reference_v`` is the neutral against the earth the relay measures against: the local PE again, or remote earth.
+    """
 
     l_n_v: tuple[float, ...]
     l_l_v: tuple[float, ...]
     v0_v: float
     n_pe_v: float | None
     unbalance_percent: dict[str, float]
+    n_reference_v: float | None = None
 
 
 @dataclass(frozen=True)
 class BreakRow:
-    """One break place, joint and load state."""
+    """One break place, joint and load state; where unresolved without relays, boards and figures of the joint."""
 
     at: str
     conductor: str
@@ -137,3 +145,7 @@ class BreakStudy:
     seen_places: int
     places: int
     notes: tuple[str, ...]
+    joints: tuple["JointSweep", ...] = ()
+    """Every place with a loose joint in place of the open break."""
+    highest: tuple["HighestVoltage", ...] = ()
+    """The highest volts over all on/off combinations of the loads behind each open break."""

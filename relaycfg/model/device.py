@@ -6,7 +6,7 @@ from typing import Literal
 
 import numpy as np
 
-from relaycfg.model.geometry import FloatArray
+from relaycfg.model.geometry import FloatArray, Geometry
 
 
 class Function(StrEnum):
@@ -19,6 +19,16 @@ class Function(StrEnum):
 
 
 Reset = Literal["instantaneous", "held"]
+THREE_LINE_UNBALANCE = {
+    "V2/V1": "positive and negative sequence take three lines",
+    "line-to-line deviation": "the one voltage between two lines has no other to deviate from",
+}
+"""Definitions of unbalance that mean nothing with two lines, and why."""
+NO_DISPLACEMENT = (
+    "two lines of a star add to half of U0 with nothing broken, so their sum is no displacement of the neutral; "
+    "only measured from N to earth is there one"
+)
+"""Why 59N from line-to-neutral volts has no use where the sound lines do not add to nothing."""
 
 
 @dataclass(frozen=True)
@@ -96,6 +106,21 @@ class Element:
 
 
 @dataclass(frozen=True)
+class LeftOut:
+    """An element that the device has and the site's system has no quantity for: to be off, and why."""
+
+    element: Element
+    why: str
+
+
+def why_left_out(element: Element, displacement_from: str, geometry: Geometry) -> str:
+    """Why an element can do nothing in a system; empty where it can."""
+    if element.function is Function.DISPLACEMENT and displacement_from == "l-n" and not geometry.has_displacement:
+        return NO_DISPLACEMENT
+    return "" if geometry.has_sequences else THREE_LINE_UNBALANCE.get(element.quantity, "")
+
+
+@dataclass(frozen=True)
 class Device:
     """A relay type: what it measures and which elements it has."""
 
@@ -107,6 +132,17 @@ class Device:
     timers: Literal["per phase", "shared"]
     displacement_from: Literal["l-n", "n-to-earth"]
     elements: tuple[Element, ...]
+    left_out: tuple[LeftOut, ...] = ()
+    """Elements of the device that are none of ``elements``: the system has no quantity for them."""
+
+    @property
+    def owned(self) -> tuple[Element, ...]:
+        """All elements the device has, whether the system has a use for them or not."""
+        return (*self.elements, *(left.element for left in self.left_out))
+
+    def why_off(self, function: Function) -> str:
+        """Why the element of that function has to be off in this system; empty where it need not."""
+        return next((left.why for left in self.left_out if left.element.function is function), "")
 
     def element(self, function: Function) -> Element | None:
         """The element with that function number, or None where the device lacks it."""

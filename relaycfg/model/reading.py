@@ -1,4 +1,4 @@
-"""What three meter readings on a four-wire board mean."""
+"""What meter readings of two or three lines on a board with a neutral mean."""
 
 from dataclasses import dataclass
 
@@ -21,8 +21,8 @@ class Reading:
     resistive load on each line that would put it there, summing to 1.
     """
 
-    l_n_v: tuple[float, float, float]
-    l_l_v: tuple[float, float, float] | None
+    l_n_v: tuple[float, ...]
+    l_l_v: tuple[float, ...] | None
     nominal_v: float
     source_v: float | None
     source_from: str
@@ -30,7 +30,7 @@ class Reading:
     v0_low_v: float | None
     v0_high_v: float | None
     band_from: str
-    load_shares: tuple[float, float, float] | None
+    load_shares: tuple[float, ...] | None
     arithmetic: tuple[str, ...]
     causes: tuple[Cause, ...]
     check_first: tuple[str, ...]

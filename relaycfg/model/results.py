@@ -3,10 +3,17 @@
 from dataclasses import dataclass
 from typing import Literal
 
+from relaycfg.model.after_break_results import AfterBreak
 from relaycfg.model.break_results import BreakStudy, Harm, Operation
+from relaycfg.model.companion_results import Companions
 from relaycfg.model.device import Device, Function
+from relaycfg.model.joint_results import EarlyWarning
+from relaycfg.model.own_life_results import OwnLife
+from relaycfg.model.place_results import Elsewhere, PlaceAsymmetry, Together
+from relaycfg.model.reconnect_results import Reconnection
 from relaycfg.model.settings import Settings, Stage
 from relaycfg.model.site import Site
+from relaycfg.model.touch_results import EarthChoice, PlaceTouch
 
 
 @dataclass(frozen=True)
@@ -237,6 +244,17 @@ class Study:
     """Element set to the smallest load ratio k in k:1:1 that it sees behind a stiff source, None where never."""
     coverage: tuple[Cover, ...]
     input_digest: str
+    place_asymmetry: tuple[PlaceAsymmetry, ...] = ()
+    elsewhere: tuple[Elsewhere, ...] = ()
+    together: tuple[Together, ...] = ()
+    early_warning: EarlyWarning | None = None
+    touch: tuple[PlaceTouch, ...] = ()
+    earth_choice: EarthChoice | None = None
+    """Only where the device takes displacement from N to earth."""
+    own_life: OwnLife | None = None
+    reconnection: Reconnection | None = None
+    companions: Companions | None = None
+    after_break: AfterBreak | None = None
 
     @property
     def exceptions(self) -> int:

@@ -45,6 +45,8 @@ class Settings:
     """Start-up inhibit of 27 and 47; never of 59 or 59N."""
     after_any_trip: Literal["by hand", "automatic"]
     reconnect_delay_s: float = 0.0
+    reconnect_attempts: int | None = None
+    """Closings by itself before it locks out; None without limit."""
 
     def of(self, function: Function) -> tuple[Stage, ...]:
         """Stages of one element in order of their number."""
@@ -53,9 +55,8 @@ class Settings:
     @property
     def digest(self) -> str:
         """sha256 of everything set, so that two sheets of one site with different settings can be told apart."""
-        rows = repr(
-            (self.for_relay, self.device, self.stages, self.inhibit_s, self.after_any_trip, self.reconnect_delay_s)
-        )
+        closing = (self.after_any_trip, self.reconnect_delay_s, self.reconnect_attempts)
+        rows = repr((self.for_relay, self.device, self.stages, self.inhibit_s, *closing))
         return f"sha256:{hashlib.sha256(rows.encode()).hexdigest()}"
 
     @property

@@ -1,6 +1,6 @@
 """A resolved site: SI units, defaults filled in, names checked. Made by ``files``, read by everything else."""
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Literal
 
 from relaycfg.model.device import Device
@@ -8,6 +8,7 @@ from relaycfg.model.geometry import Geometry
 from relaycfg.model.judgement import Judgement
 
 Tag = Literal["measured", "nameplate", "letter", "assumed", "default"]
+EarthReference = Literal["local PE", "own electrode"]
 SOURCE = "source"
 """Reserved place name: the star point, and as a break place the star link."""
 NONE = "none"
@@ -118,6 +119,8 @@ class Board:
     cable: Cable | None
     neutral_earth_link: bool
     electrode_ohm: float | None
+    touch_limit_v: float = float("inf")
+    """Touch voltage that may stay at what it feeds [V]."""
 
 
 @dataclass(frozen=True)
@@ -146,6 +149,15 @@ class Load:
     minds_low_v: bool
     third_harmonic_percent: float
     kind: str
+    cutout_pu: float | None = None
+    """Below these volts it drops out (None: it never does)."""
+    restart_s: float | None = None
+    """So long after its volts are back at ``band_low_pu`` it starts again (None: it stays out)."""
+    stall_pu: float | None = None
+    """Single-phase motor inside: below these volts it stalls and takes ``stalled_va`` (at nominal volts) instead."""
+    stalled_va: complex = 0j
+    damage_pu: float | None = None
+    """At these volts it fails open (None: it stands whatever comes)."""
 
 
 @dataclass(frozen=True)
@@ -166,6 +178,8 @@ class Motor:
     starting_va: complex
     start_s: float
     usage: float
+    stall_pu: float | None = None
+    """Below these volts a single-phase motor stalls and takes ``starting_va``."""
 
 
 @dataclass(frozen=True)
@@ -208,6 +222,8 @@ class Relay:
     coil_and_breaker_s: float
     dead_bus_pu: float = 0.0
     """Share of nominal below which all line-to-neutral volts together count as a dead system; 0: it never does."""
+    earth_reference: EarthReference = "local PE"
+    """Earth that N is measured against where the device takes displacement from N to earth."""
 
 
 @dataclass(frozen=True)
@@ -228,6 +244,19 @@ class Equipment:
     name: str
     source: str
     status: str
+
+
+@dataclass(frozen=True)
+class TouchTimes:
+    """Longest times by touch voltage, [volts, seconds] steps with rising volts; information, no shock protection.
+
+    A voltage between two steps has the time of the higher one; beyond the last none.
+    """
+
+    points: tuple[tuple[float, float], ...] = ()
+    source: str = ""
+    status: str = ""
+    applies_to: str = ""
 
 
 @dataclass(frozen=True)
@@ -287,6 +316,20 @@ class Site:
     files: tuple[str, ...] = ()
     """Paths of the files it was read from: no result may be written over them."""
     judgement: Judgement = field(default_factory=Judgement)
+    relays: tuple[Relay, ...] = ()
+    """Every relay of the site; ``relay`` is the one studied."""
+    touch: TouchTimes = field(default_factory=TouchTimes)
+
+    def with_relay(self, name: str) -> "Site":
+        """The same site with the relay of that name as the one studied (KeyError for another name)."""
+        return replace(self, relay={r.name: r for r in self.relays}[name])
+
+    @property
+    def every_relay(self) -> tuple[Relay, ...]:
+        """All relays, the one studied first."""
+        if self.relay is None:
+            return self.relays
+        return (self.relay, *(r for r in self.relays if r.name != self.relay.name))
 
     def board(self, name: str) -> Board:
         """The board of that name (names are checked when the site is read)."""

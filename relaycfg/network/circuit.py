@@ -16,6 +16,19 @@ LINK_OHM = 1e-4
 """Neutral-to-earth link at the source's own bar, so that it never closes a loop without any impedance."""
 
 
+def open_line(line: str) -> str:
+    """What the cut of that line at the source's terminals is called; a board's name never begins with a blank."""
+    return f" line {line} open"
+
+
+def blown_fuse(line: str) -> str:
+    """What the cut behind a blown fuse on the high-voltage side of a delta-star transformer is called.
+
+    ``line`` keeps its volts; the windings of the two others lie in series, so that they carry one current.
+    """
+    return f" fuse blown, {line} whole"
+
+
 class Circuit:
     """Potentials against STAR and branch currents of a linear circuit, both kept as unknowns.
 
@@ -81,6 +94,20 @@ class Wiring:
     """Break place to the branch of its neutral; the current counts towards the source."""
     tied: bool
     """Whether any electrode ties the system to remote earth; the stated leak does not count."""
+
+    def cuts(self, lines: tuple[str, ...]) -> dict[str, dict[int, float]]:
+        """Every cut by its name: branches whose currents, each by its sign, add up to nothing while it is open.
+
+        A lost neutral stops one conductor; an open line at the source stops its EMF; behind a blown fuse of a
+        delta-star transformer the currents of two lines are equal, their difference nothing.
+        """
+        found = {place: {branch: 1.0} for place, branch in self.joints.items()}
+        found |= {open_line(name): {branch: 1.0} for name, branch in zip(lines, self.emf, strict=True)}
+        for k, name in enumerate(lines):
+            first, *others = self.emf[k + 1 :] + self.emf[:k]
+            if len(others) == 1:
+                found[blown_fuse(name)] = {first: 1.0, others[0]: -1.0}
+        return found
 
 
 def parallel(ohms: Sequence[float]) -> float:

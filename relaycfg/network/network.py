@@ -6,8 +6,8 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from relaycfg.model.geometry import BoolArray, ComplexArray
-from relaycfg.model.site import NONE, Site
+from relaycfg.model.geometry import BoolArray, ComplexArray, FloatArray
+from relaycfg.model.site import NONE, EarthReference, Site
 from relaycfg.network.branches import build_branches
 from relaycfg.network.loadlaw import Law, outside
 from relaycfg.network.reduction import Reduction, reduce_network
@@ -71,29 +71,38 @@ class Network:
         place: str,
         states: LoadStates,
         emf: ComplexArray,
-        joint_ohm: float | None = None,
+        joint_ohm: float | FloatArray | None = None,
         all_impedance: bool = False,
         look_for_roots: bool = False,
     ) -> Solved:
         """Solve all states with the neutral broken at ``place`` (``none``, ``source`` or a board's incoming cable).
 
+        ``place`` may also be a cut of the lines, ``open_line`` or ``blown_fuse``: an open line's joint is that line at
+        the source's terminals; the EMF behind a blown fuse is the caller's.
+
         ``emf`` [lines] are the source's EMF phasors [V], line to star. ``joint_ohm`` None is an open break, a number
-        the resistance of the joint (0: sound). ``all_impedance`` takes every load as the constant impedance of its
+        the resistance of the joint (0: sound), an array [states] of each state's own (above 0, inf: open).
+        ``all_impedance`` takes every load as the constant impedance of its
         rating. ``look_for_roots`` starts again from a neutral shifted to 0.8 of each line's EMF; a state that comes
         to rest more than 0.1 V elsewhere has several solutions; what is returned stays connected to the sound
         neutral. Raises KeyError for an unknown place, ValueError for a negative joint.
 
         Large samples are best handed over a few thousand states at a time: the result keeps every board's phasors.
         """
-        if joint_ohm is not None and joint_ohm < 0:
+        finite, each_s = joint_ohm is not None, None
+        if isinstance(joint_ohm, np.ndarray):
+            if joint_ohm.shape != (states.count,) or not (joint_ohm > 0).all():
+                raise ValueError("give each state's joint more than zero ohm")
+            each_s, joint_ohm = 1 / joint_ohm, None
+        elif joint_ohm is not None and joint_ohm < 0:
             raise ValueError(f"the joint has {joint_ohm} ohm; give zero or more")
         order, problem = self._problem(place, emf, joint_ohm)
-        run = _Run(self._reduction, place, order, problem, states.count, joint_ohm is not None)
+        run = _Run(self._reduction, place, order, problem, states.count, finite, each_s)
         self._sweep(run, states, all_impedance, 0j)
         several = np.zeros(states.count, bool)
         if look_for_roots and problem.joint:
             for start in FAR_START * emf:
-                other = _Run(self._reduction, place, order, problem, states.count, joint_ohm is not None)
+                other = _Run(self._reduction, place, order, problem, states.count, finite, each_s)
                 self._sweep(other, states, all_impedance, complex(start))
                 apart = np.abs(other.joint_v - run.joint_v) > SAME_ROOT_V
                 several |= run.flags["converged"] & other.flags["converged"] & apart
@@ -109,7 +118,7 @@ class Network:
         for first in range(0, count, block):
             part = np.arange(first, min(first + block, count))
             law = self._law(states, part, run.order, all_impedance)
-            found, at = solve_block(run.problem, law, start)
+            found, at = solve_block(run.problem, law, start, run.each(part))
             run.keep(part, law, found)
             rest = np.flatnonzero(~found.converged)
             if len(rest):
@@ -121,7 +130,7 @@ class Network:
         for first in range(0, len(pool), block):
             among = np.arange(first, min(first + block, len(pool)))
             law = self._law(states, pool[among], run.order, all_impedance)
-            run.keep(pool[among], law, chase(run.problem, law, pick(iterate, among), start))
+            run.keep(pool[among], law, chase(run.problem, law, pick(iterate, among), start, run.each(pool[among])))
 
     def _problem(self, place: str, emf: ComplexArray, joint_ohm: float | None) -> tuple[NDArray[np.intp], Problem]:
         """The solver's problem, and the order of the branches in it: those the joint acts on first."""
@@ -175,9 +184,16 @@ class _Run:
     """What one solution of all states gathers: shown phasors without the EMF's part, the joint, the statuses."""
 
     def __init__(
-        self, reduction: Reduction, place: str, order: NDArray[np.intp], problem: Problem, count: int, finite: bool
+        self,
+        reduction: Reduction,
+        place: str,
+        order: NDArray[np.intp],
+        problem: Problem,
+        count: int,
+        finite: bool,
+        each_s: FloatArray | None,
     ) -> None:
-        self.order, self.problem = order, problem
+        self.order, self.problem, self._each_s = order, problem, each_s
         self._show = reduction.show_current[:, order]
         self._show_joint = reduction.show_joint[place][:, None] if problem.joint else None
         self._finite = finite and place != NONE
@@ -185,6 +201,10 @@ class _Run:
         self.joint_v, self.joint_a = np.zeros(count, complex), np.zeros(count, complex)
         names = ("converged", "below_band", "above_band", "unstable")
         self.flags: dict[str, Any] = {name: np.zeros(count, bool) for name in names}
+
+    def each(self, part: NDArray[np.intp]) -> FloatArray | None:
+        """The joint admittances [S] of the states ``part`` where each has its own."""
+        return None if self._each_s is None else self._each_s[part]
 
     def keep(self, part: NDArray[np.intp], law: Law, found: Solution) -> None:
         """Write the solution of the states ``part``."""
@@ -215,6 +235,11 @@ def motor_start(network: Network, site: Site, motor_index: int, states: LoadStat
     return network.solve(NONE, LoadStates(states.loads, motors, states.names), emf)
 
 
-def tap(solved: Solved, board_index: int) -> ComplexArray:
-    """What a relay's terminals at that board carry [states, lines + 1]: line to neutral, then neutral to local PE."""
-    return np.vstack([solved.l_n[board_index], solved.n_pe[board_index]]).T
+def tap(solved: Solved, board_index: int, earth_reference: EarthReference = "local PE") -> ComplexArray:
+    """What a relay's terminals at that board carry [states, lines + 1]: line to neutral, then neutral to earth.
+
+    That earth is the board's own PE, or remote earth for a relay with an electrode of its own, which carries no
+    current and lies outside the influence of all others; nan where there is none.
+    """
+    earth = solved.n_earth if earth_reference == "own electrode" else solved.n_pe
+    return np.vstack([solved.l_n[board_index], earth[board_index]]).T

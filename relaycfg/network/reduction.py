@@ -17,7 +17,8 @@ class Reduction:
     With all joints whole and w an EMF in series with one of them:
     U = by_emf emf - z i + joint[place] w for the branch voltages, and
     joint current (towards the source) = c0 emf - back i + y w. ``show_*`` give the reported quantities alike,
-    rows in the order of ``rows``.
+    rows in the order of ``rows``. Beside the break places stand the cuts of the lines (``Wiring.cuts``): there w lies
+    in series with each branch of the cut, by its sign, and the joint current is the sum of theirs.
     """
 
     by_emf: ComplexArray
@@ -48,26 +49,28 @@ def reduce_network(site: Site, branches: Branches) -> Reduction:
         for line in range(lines):
             see_ports[board * lines + line, wiring.lines[board][line]] += 1
             see_ports[board * lines + line, wiring.neutral[board]] -= 1
-    places = list(wiring.joints)
+    cuts = wiring.cuts(site.supply.geometry.names)
+    places = list(cuts)
     count = len(branches.board)
     right = np.zeros((circuit.size, lines + count + len(places)), complex)
     for line, branch in enumerate(wiring.emf):
         right[circuit.current(branch), line] = -1
     right[:, lines : lines + count] = -see_ports.T @ branches.feed
     for column, place in enumerate(places):
-        right[circuit.current(wiring.joints[place]), lines + count + column] = 1
+        for branch, sign in cuts[place].items():
+            right[circuit.current(branch), lines + count + column] = sign
     solution = circuit.solve(right)
     emf, current, joint = solution[:, :lines], solution[:, lines : lines + count], solution[:, lines + count :]
     see = branches.see @ see_ports
     show, own, rows = _shown(site, wiring, branches, see_ports)
-    at = {place: circuit.current(wiring.joints[place]) for place in places}
+    through = {place: right[:, lines + count + k].real @ solution for k, place in enumerate(places)}
     return Reduction(
         see @ emf,
         -(see @ current),
         {place: see @ joint[:, k] for k, place in enumerate(places)},
-        {place: emf[at[place]] for place in places},
-        {place: -current[at[place]] for place in places},
-        {place: complex(joint[at[place], k]) for k, place in enumerate(places)},
+        {place: through[place][:lines] for place in places},
+        {place: -through[place][lines : lines + count] for place in places},
+        {place: complex(through[place][lines + count + k]) for k, place in enumerate(places)},
         show @ emf,
         show @ current + own,
         {place: show @ joint[:, k] for k, place in enumerate(places)},

@@ -32,11 +32,14 @@ class Solution:
     magnitude: FloatArray
 
 
-def leak(problem: Problem, law: Law) -> FloatArray:
+def leak(problem: Problem, law: Law, each_s: FloatArray | None = None) -> FloatArray:
     """Leak [S] across an open joint, [1, states]: LEAK_S where the rest of the network holds the neutral by less.
 
-    Elsewhere it is left out, since it would shift loaded islands in the fourth digit.
+    Elsewhere it is left out, since it would shift loaded islands in the fourth digit. ``each_s`` [states] is each
+    state's own joint admittance, 0 where it is open: it comes on top of the problem's.
     """
+    if each_s is not None:
+        return np.where(each_s > 0, each_s, leak(problem, law))
     if problem.joint_s > 0 or not problem.joint:
         return np.zeros((1, law.z_re.shape[1]))
     part, h2 = law.rows(problem.acted_on), np.abs(problem.h[: problem.acted_on]) ** 2
@@ -46,13 +49,15 @@ def leak(problem: Problem, law: Law) -> FloatArray:
     return across
 
 
-def solve_block(problem: Problem, law: Law, start_w: complex = 0j) -> tuple[Solution, Iterate]:
+def solve_block(
+    problem: Problem, law: Law, start_w: complex, each_s: FloatArray | None = None
+) -> tuple[Solution, Iterate]:
     """The usual schedule for the states of one block: most have converged after it, the rest goes to ``chase``.
 
     FAST_SWEEPS in single precision, then EXACT_SWEEPS in double with the last slopes. A state has converged when its
     last move times its rate is below TOLERANCE_V.
     """
-    leak_s = leak(problem, law)
+    leak_s = leak(problem, law, each_s)
     problem = problem.about(middle(law))
     at = _begin(problem, law.z_re.shape[1], start_w, FIRST_CAP_V, np.float32)
     single = Sweeper(problem, law, leak_s, np.float32)
@@ -66,12 +71,12 @@ def solve_block(problem: Problem, law: Law, start_w: complex = 0j) -> tuple[Solu
     return _finish(problem, law, leak_s, at, _error(before, size) < TOLERANCE_V), at
 
 
-def chase(problem: Problem, law: Law, at: Iterate, start_w: complex = 0j) -> Solution:
+def chase(problem: Problem, law: Law, at: Iterate, start_w: complex, each_s: FloatArray | None = None) -> Solution:
     """States that ``solve_block`` left moving: fresh slopes from where they are, then small steps from the start.
 
     Without a stable state near the intact one a state may not converge.
     """
-    leak_s = leak(problem, law)
+    leak_s = leak(problem, law, each_s)
     problem = problem.about(middle(law))
     converged = _until_still(problem, law, leak_s, at, MORE_SWEEPS)
     rest = np.flatnonzero(~converged)

@@ -17,13 +17,14 @@ from relaycfg.relay.bands import (
 )
 from relaycfg.relay.course import play
 from relaycfg.relay.machine import run
-from relaycfg.relay.quantities import Measured, measured_quantities, severities
+from relaycfg.relay.quantities import Measured, definitions, measured_quantities, severities
 from relaycfg.relay.trip_tables import TripTable, trip_table
 
 __all__ = [
     "Band",
     "Measured",
     "TripTable",
+    "definitions",
     "least_sensitive",
     "longest_delay",
     "measured_quantities",

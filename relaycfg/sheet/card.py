@@ -89,8 +89,14 @@ def _below(ink: Ink, result: StageResult) -> Markup:
         to_neutral=abs(base - nominal) < 1e-6,
         volts=stage.pickup,
         quantity=measured(result, study),
+        two=_two_lines(study),
         lines=stage.phases if stage.function in (Function.OVERVOLTAGE, Function.UNDERVOLTAGE) else "",
     )
+
+
+def _two_lines(study: Study) -> bool:
+    """Whether the system has two lines: one voltage between them, and V0 is half their difference."""
+    return not study.site.supply.geometry.has_sequences
 
 
 def _figure(figure: str, unit: str) -> Markup:
@@ -116,7 +122,9 @@ def _wiring(ink: Ink) -> Flow:
 
 
 def _meanings(ink: Ink, functions: list[Function]) -> Flow:
+    two = _two_lines(ink.study)
     rows = [
-        [Markup("<b>{}</b>").format(f.value), ink.wording.text(f"card.meaning.{f.name.lower()}")] for f in functions
+        [Markup("<b>{}</b>").format(f.value), ink.wording.text(f"card.meaning.{f.name.lower()}", two=two)]
+        for f in functions
     ]
     return [*ink.table((), rows, (8, 92), "ll", "cardcell"), ink.gap(6)] if rows else []

@@ -54,7 +54,7 @@ def findings(ink: Ink) -> Flow:
 
 
 def worked(ink: Ink) -> Flow:
-    """One break by hand: three admittances, the displacement, three volts, beside the solver's."""
+    """One break by hand: each line's admittance, the displacement, each line's volts, beside the solver's."""
     work, wording = ink.study.worked, ink.wording
     if work is None:
         return [*ink.heading("worked"), ink.say("worked.empty")]
@@ -74,7 +74,7 @@ def worked(ink: Ink) -> Flow:
 
 def cautions(ink: Ink) -> Flow:
     """What every sheet warns of."""
-    return [*ink.heading("cautions"), *ink.items("cautions.list")]
+    return [*ink.heading("cautions"), *ink.items("cautions.list", study=ink.study)]
 
 
 def sources(ink: Ink) -> Flow:

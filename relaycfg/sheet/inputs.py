@@ -71,7 +71,28 @@ def _feeds(ink: Ink) -> Flow:
         *ink.heading("inputs_feeds", 1, ink.wording.text("inputs.feeds_title")),
         *ink.table(ink.wording.lines("inputs.feeds_heads"), rows, (60, 20, 20), "lrr"),
         ink.say("inputs.ranges", "small", relay=relay, supply=supply, coil=coil),
+        *_feed_life(ink),
     ]
+
+
+def _feed_life(ink: Ink) -> Flow:
+    """Of each feed how often, how long and how it fails, then what of the trip is left."""
+    life = ink.study.own_life
+    if life is None:
+        return []
+    flow: Flow = [
+        ink.say(
+            "inputs.feed_life",
+            "small",
+            feed=feed,
+            below=figures.share(feed.below),
+            above=figures.share(feed.above),
+            held="; ".join(f"{h.case} {h.name}, {figures.by_unit(h.lowest_v, 'V')}" for h in feed.held_losses),
+        )
+        for feed in life.feeds
+    ]
+    fails, self_opening = figures.share(life.trip_fails), figures.share(life.self_opening_fails)
+    return [*flow, ink.say("inputs.trip_fails", "small", fails=fails, self_opening=self_opening)]
 
 
 def network(ink: Ink) -> Flow:

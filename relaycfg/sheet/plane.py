@@ -4,6 +4,7 @@ import math
 from typing import Any
 
 from relaycfg.model.device import Function
+from relaycfg.model.geometry import Geometry
 from relaycfg.model.results import PlanePoint, StageResult, Study
 from relaycfg.sheet import figures, fonts
 from relaycfg.sheet.chart import DASHED, DOTTED, hatch, stroke, text
@@ -30,7 +31,7 @@ def plane(ink: Ink) -> Flow:
 
     return [
         *ink.heading("plane", room=_SIDE + 140),
-        ink.say("plane.lead", source=ink.study.site.source, each=_each(ink.study)),
+        ink.say("plane.lead", source=ink.study.site.source, each=_each(ink.study), geometry=_geometry(ink.study)),
         Sketch(ink.width, _SIDE + 6, draw),
         ink.gap(4),
         *ink.table(wording.lines("plane.heads"), rows, (75, 25), "lr", width=0.6 * ink.width),
@@ -63,14 +64,30 @@ def rings(study: Study) -> list[Ring]:
     return found
 
 
+def _geometry(study: Study) -> Geometry:
+    return study.site.supply.geometry
+
+
+def upright(study: Study) -> complex:
+    """Unit phasor that turns the plane: the first of three lines upward; two lines on one level, the first on the left.
+
+    With two lines the sound neutral stands between them (split phase) or below the line from one to the other.
+    """
+    phasors = _geometry(study).phasors
+    if _geometry(study).has_sequences:
+        return 1j
+    across = complex(phasors[1] - phasors[0])
+    return across.conjugate() / abs(across)
+
+
 def _corners(study: Study) -> list[complex]:
-    """The lines at the source's no-load volts, the first upward."""
-    return [complex(c) * study.site.source.emf_v * 1j for c in study.site.supply.geometry.phasors]
+    """The lines at the source's no-load volts, as the plane is turned."""
+    return [complex(c) * study.site.source.emf_v * upright(study) for c in _geometry(study).phasors]
 
 
 def _radius(result: StageResult, study: Study) -> float:
-    """The circle's radius [V]: a pickup in 3V0 counts a third."""
-    return result.stage.pickup / (3 if measured(result, study) == "3v0" else 1)
+    """The circle's radius [V]: a pickup in 3V0 counts a third, one in the sum of two lines half."""
+    return result.stage.pickup / (len(_geometry(study).names) if measured(result, study) == "3v0" else 1)
 
 
 def _draw(ink: Ink, canvas: Any, width: float, height: float) -> None:
@@ -95,8 +112,10 @@ def _draw(ink: Ink, canvas: Any, width: float, height: float) -> None:
     canvas.setDash()
     corners = [middle + scale * corner for corner in _corners(study)]
     stroke(canvas, [(c.real, c.imag) for c in (*corners, corners[0])], 0.5)
-    _points(canvas, study.plane, middle, scale)
+    _points(canvas, study.plane, middle, scale * upright(study))
     canvas.restoreState()
+    if not _geometry(study).has_sequences:
+        _sound_neutral(canvas, middle)
     _names(ink, canvas, corners, middle)
     canvas.setLineWidth(0.6)
     canvas.rect(*box)
@@ -113,16 +132,23 @@ def _shade(canvas: Any, function: Function, at: complex, radius: float, box: tup
     hatch(canvas, region, box, 45, 7)
 
 
-def _points(canvas: Any, points: tuple[PlanePoint, ...], middle: complex, scale: float) -> None:
+def _points(canvas: Any, points: tuple[PlanePoint, ...], middle: complex, scale: complex) -> None:
     """Marks by class, one on top of each other only once; the weightiest class last."""
     for name in _CLASSES:
         spots = {}
         for point in points:
             if _class(point) == name:
-                at = middle - scale * point.v0 * 1j
+                at = middle - scale * point.v0
                 spots[round(at.real), round(at.imag)] = at
         for at in spots.values():
             mark(canvas, name, at.real, at.imag)
+
+
+def _sound_neutral(canvas: Any, at: complex) -> None:
+    """Where a sound neutral stands: three lines show it as the middle of their triangle, two lines do not."""
+    canvas.setLineWidth(0.9)
+    canvas.circle(at.real, at.imag, 5, stroke=1, fill=0)
+    text(canvas, at.real, at.imag - 14, "N", "middle", fonts.BOLD, 8)
 
 
 def mark(canvas: Any, name: str, x: float, y: float) -> None:

@@ -13,13 +13,18 @@ from reportlab.platypus import BaseDocTemplate, Frame, PageBreak, PageTemplate
 from relaycfg.errors import InputError, Problem
 from relaycfg.model.results import Study
 from relaycfg.sheet import figures, fonts
+from relaycfg.sheet.after_break import after_break
+from relaycfg.sheet.aftermath import aftermath
 from relaycfg.sheet.card import card
 from relaycfg.sheet.closing import cautions, closed, digest, findings, glossary, sources, worked
+from relaycfg.sheet.combinations import combinations
 from relaycfg.sheet.corridors import corridors
 from relaycfg.sheet.decision import decision
 from relaycfg.sheet.derivation import derivation
+from relaycfg.sheet.earthing import earthing
 from relaycfg.sheet.ink import Flow, Ink, Sketch
 from relaycfg.sheet.inputs import inputs, network
+from relaycfg.sheet.joints import joints
 from relaycfg.sheet.judged import breaks, cases
 from relaycfg.sheet.later import TOTAL, line
 from relaycfg.sheet.plane import plane
@@ -40,6 +45,11 @@ SECTIONS: dict[str, Callable[[Ink], Flow]] = {
     "plane": plane,
     "cases": cases,
     "breaks": breaks,
+    "joints": joints,
+    "earthing": earthing,
+    "combinations": combinations,
+    "after_break": after_break,
+    "aftermath": aftermath,
     "closed": closed,
     "findings": findings,
     "worked": worked,
@@ -104,6 +114,10 @@ def _printed(study: Study) -> dict[str, object]:
     """What of a study can reach the page, by name: all but the single break rows; fields of the site as written."""
     names = ("device", "settings", "stages", "cases", "corridors", "closed", "findings", "tests", "worked")
     parts = {name: getattr(study, name) for name in (*names, "feed_range_v", "smallest_asymmetry", "coverage")}
+    parts |= {name: getattr(study, name) for name in ("own_life", "reconnection", "companions")}
+    parts |= {name: getattr(study, name) for name in ("place_asymmetry", "together")}
+    parts |= {"highest": study.breaks.highest}
+    parts |= {"after_break": study.after_break}
     return {"": study.site, **parts, "breaks": study.breaks.summaries, "notes": study.breaks.notes}
 
 

@@ -15,7 +15,7 @@ Row = tuple[Function, int, StageResult | None]
 def rows(study: Study) -> list[Row]:
     """Function, stage number and result (None: a stage the device has and the study leaves unused)."""
     judged = {(r.stage.function, r.stage.number): r for r in study.stages}
-    owned = [(e.function, n) for e in study.device.elements for n in range(1, e.stages + 1)]
+    owned = [(e.function, n) for e in study.device.owned for n in range(1, e.stages + 1)]
     keys = owned + [key for key in judged if key not in owned]
     keys.sort(key=lambda key: (list(Function).index(key[0]), key[1]))
     return [(function, number, judged.get((function, number))) for function, number in keys]
@@ -71,7 +71,7 @@ def settings_table(ink: Ink) -> Flow:
     lines += [
         [Markup("<b>{}</b>").format(f.value), figures.ABSENT, wording.text("decision.not_owned"), *[figures.ABSENT] * 7]
         for f in Function
-        if study.device.element(f) is None and all(r.stage.function is not f for r in study.stages)
+        if all(e.function is not f for e in study.device.owned) and all(r.stage.function is not f for r in study.stages)
     ]
     heads = wording.lines("decision.settings_heads")
     return ink.table(heads, lines, (8.5, 6.5, 9, 13, 9.5, 16.5, 8.5, 9.5, 13, 6), "lcllrlrrll")

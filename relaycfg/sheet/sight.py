@@ -83,14 +83,14 @@ def _boards(ink: Ink, summary: PlaceSummary) -> Flow:
             "sight.boards",
             "small",
             s=summary,
-            harmed=_some(summary.boards_harmed),
-            healthy=_some(summary.boards_healthy),
-            left=_some(summary.not_disconnected),
+            harmed=some(summary.boards_harmed),
+            healthy=some(summary.boards_healthy),
+            left=some(summary.not_disconnected),
         )
     ]
 
 
-def _some(boards: tuple[str, ...]) -> str:
+def some(boards: tuple[str, ...]) -> str:
     """The names, or their first ones and how many there are where a list would drown the page."""
     shown = ", ".join(boards[:NAMES_SHOWN])
     return shown if len(boards) <= NAMES_SHOWN else f"{shown} and {len(boards) - NAMES_SHOWN} more"
@@ -98,11 +98,17 @@ def _some(boards: tuple[str, ...]) -> str:
 
 def _asymmetry(ink: Ink) -> Flow:
     width = (ink.width - 14) * _LEFT
-    never = ink.wording.text("sight.never")
-    rows = [
-        [elements, never if k is None else f"{k:.2f} : 1 : 1"] for elements, k in ink.study.smallest_asymmetry.items()
-    ]
-    return ink.table(ink.wording.lines("sight.asymmetry_heads"), rows, (50, 50), "lr", width=width)
+    never, stiff = ink.wording.text("sight.never"), ink.study.smallest_asymmetry
+    places = {ink.wording.text("sight.stiff"): stiff} | {a.at: a.ratios for a in ink.study.place_asymmetry}
+    rows = [[at, *(_ratio(known.get(name, 0.0), never) for name in stiff)] for at, known in places.items()]
+    shares = (34, *[66 / max(len(stiff), 1)] * len(stiff))
+    heads = [ink.wording.text("sight.asymmetry_head"), *stiff]
+    return ink.table(heads, rows, shares, "l" + "r" * len(stiff), width=width)
+
+
+def _ratio(k: float | None, never: Any) -> Any:
+    """The k of unequal loads; 0 where there is none to give."""
+    return never if k is None else figures.ABSENT if k == 0.0 else f"{k:.2f}"
 
 
 def _coverage(ink: Ink) -> Flow:

@@ -3,5 +3,6 @@
 from relaycfg.study.breaks import breaks
 from relaycfg.study.reading import read_meter
 from relaycfg.study.study import check, derive
+from relaycfg.study.two_line_reading import read_board
 
-__all__ = ["breaks", "check", "derive", "read_meter"]
+__all__ = ["breaks", "check", "derive", "read_board", "read_meter"]

@@ -2,10 +2,9 @@
 
 import numpy as np
 
-from relaycfg.model.device import Function
-from relaycfg.model.geometry import ComplexArray
+from relaycfg.model.geometry import BoolArray, ComplexArray
 from relaycfg.model.results import WorkedBreak
-from relaycfg.model.site import Load, Motor, Site
+from relaycfg.model.site import SOURCE, Load, Motor, Site
 from relaycfg.network import connected
 from relaycfg.relay import severities
 from relaycfg.study.evidence import Evidence
@@ -22,26 +21,31 @@ def smallest_asymmetry(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> d
 
     Closed form for a stiff source (Millman); what stays below k is not detectable at these settings.
     """
-    sets: dict[str, tuple[Function, ...]] = {f.value: (f,) for f in dict.fromkeys(s.function for s in stages)}
-    if len(sets) > 1:
-        sets["all"] = tuple(Function)
     ratios = np.geomspace(1.0, LARGEST_RATIO, RATIO_STEPS)
     taps = _open_star(evidence, ratios)
     found: dict[str, float | None] = {}
-    for name, functions in sets.items():
-        seen = np.zeros(len(ratios), bool)
-        for stage in stages:
-            if stage.function in functions:
-                channels = severities(
-                    stage.ladder.element,
-                    evidence.site.supply.geometry,
-                    taps,
-                    evidence.relay.device.displacement_from,
-                )
-                worst = channels.min(axis=-1) if stage.stage.phases == "all" else channels.max(axis=-1)
-                seen |= worst >= stage.insensitive.pickup
+    for name, chosen in element_sets(stages).items():
+        seen = picks_up(evidence, chosen, taps)
         found[name] = float(ratios[np.argmax(seen)]) if seen.any() else None
     return found
+
+
+def element_sets(stages: tuple[ActiveStage, ...]) -> dict[str, tuple[ActiveStage, ...]]:
+    """The stages of each element that has any, by its name, and all of them together where there are several."""
+    sets = {f.value: tuple(s for s in stages if s.function is f) for f in dict.fromkeys(s.function for s in stages)}
+    return sets | ({"all": stages} if len(sets) > 1 else {})
+
+
+def picks_up(evidence: Evidence, stages: tuple[ActiveStage, ...], taps: ComplexArray) -> BoolArray:
+    """Whether some stage surely picks up at those taps [..., lines + 1], at the least sensitive end of its band."""
+    seen = np.zeros(taps.shape[:-1], bool)
+    for stage in stages:
+        channels = severities(
+            stage.ladder.element, evidence.site.supply.geometry, taps, evidence.relay.device.displacement_from
+        )
+        worst = channels.min(axis=-1) if stage.stage.phases == "all" else channels.max(axis=-1)
+        seen |= worst >= stage.insensitive.pickup
+    return seen
 
 
 def _open_star(evidence: Evidence, ratios: np.ndarray) -> ComplexArray:
@@ -77,7 +81,7 @@ def worked_break(evidence: Evidence) -> WorkedBreak | None:
         if item.board in behind and item.to_neutral:
             power = item.running_va if isinstance(item, Motor) else complex(item.p_w, item.q_var)
             admittance[list(item.lines)] += power.conjugate() / len(item.lines) / site.supply.nominal_v**2
-    path = _electrode_path_s(site, behind)
+    path = electrode_path_s(site, place)
     if abs(admittance.sum() + path) == 0:
         return None
     emf = evidence.levels.nominal
@@ -95,9 +99,14 @@ def worked_break(evidence: Evidence) -> WorkedBreak | None:
     )
 
 
-def _electrode_path_s(site: Site, behind: tuple[str, ...]) -> float:
-    """Admittance of the way back through electrodes tied to N behind the break, and the source's electrode."""
-    tied = [b.electrode_ohm for b in map(site.board, behind) if b.neutral_earth_link and b.electrode_ohm]
+def electrode_path_s(site: Site, place: str) -> float:
+    """Admittance of the way back through electrodes tied to N behind the break, and the source's electrode.
+
+    None at the star link where the source's electrode sits on the bar: it is behind that break itself.
+    """
+    if place == SOURCE and site.source.earth_at == "neutral-bar":
+        return 0.0
+    tied = [b.electrode_ohm for b in map(site.board, site.behind(place)) if b.neutral_earth_link and b.electrode_ohm]
     if not tied or site.source.electrode_ohm is None:
         return 0.0
     return 1 / (site.source.electrode_ohm + 1 / sum(1 / ohm for ohm in tied))

@@ -5,11 +5,14 @@ import numpy as np
 from relaycfg.model.break_results import PlaceSummary
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray
+from relaycfg.model.own_life_results import OwnLife
+from relaycfg.model.place_results import Elsewhere
 from relaycfg.model.results import ClosedGroup, Finding
 from relaycfg.model.settings import Settings
 from relaycfg.study.coverage import cover_of
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.feeds import FeedRange
+from relaycfg.study.place_summary import TOGETHER
 from relaycfg.study.scenarios import Scenarios
 from relaycfg.study.setting_findings import turn
 from relaycfg.study.settle import Settled
@@ -178,7 +181,7 @@ def blind(evidence: Evidence, settings: Settings, active: tuple[ActiveStage, ...
     return found
 
 
-def floating_feeds(feeds: tuple[FeedRange, ...]) -> list[Finding]:
+def floating_feeds(feeds: tuple[FeedRange, ...], life: OwnLife) -> list[Finding]:
     """Supplies and coils that the lost neutral takes out of their working range."""
     found = []
     for feed in feeds:
@@ -204,24 +207,70 @@ def floating_feeds(feeds: tuple[FeedRange, ...]) -> list[Finding]:
                 f"{feed.what} is fed {feed.between} from the floating system: {feed.lowest_v:.0f} to "
                 f"{feed.highest_v:.0f} V over the break states, outside its {low:g} to {high:g} V in "
                 f"{percent:.1f} % of the harmful scenarios",
-                "feed it from an auxiliary source, or use an undervoltage release that opens by itself",
+                _better_fed(life),
                 "the relay decides and nothing opens",
             )
         )
     return found
 
 
-def places_findings(places: tuple[PlaceSummary, ...]) -> list[Finding]:
-    """Places the relay cannot see, and boards its switch does not disconnect."""
+def _better_fed(life: OwnLife) -> str:
+    """An auxiliary feed, or a self-opening one with what it would leave."""
+    if any(f.opens_itself for f in life.feeds):
+        return "feed it from an auxiliary source"
+    left, of = life.self_opening_fails.count, life.self_opening_fails.of
+    return (
+        "feed it from an auxiliary source, or use an undervoltage release behind an output that is energised while "
+        f"healthy: at nominal supply that would leave {left} of {of} harmful states, and open in dips"
+    )
+
+
+def opened_by_release(life: OwnLife) -> list[Finding]:
+    """A release that opens the switch in cases that must hold."""
     found = []
+    for feed in life.feeds:
+        if not feed.held_losses:
+            continue
+        deepest = min(feed.held_losses, key=lambda h: h.lowest_v)
+        cases = ", ".join(str(h.case) for h in feed.held_losses)
+        found.append(
+            Finding(
+                "exception",
+                feed.what,
+                f"{feed.what} is fed {feed.between} and opens the switch by itself in {len(feed.held_losses)} cases "
+                f"that must hold ({cases}), down to {deepest.lowest_v:.0f} V",
+                "feed it from an auxiliary source that rides through, or delay the release beyond these cases",
+                "it disconnects a sound supply, whatever the settings",
+            )
+        )
+    return found
+
+
+EARTH_APART = (
+    "measure N against an electrode outside the influence of all others (earth_reference), or take displacement from "
+    "the lines"
+)
+
+
+def places_findings(places: tuple[PlaceSummary, ...], elsewhere: tuple[Elsewhere, ...]) -> list[Finding]:
+    """Places the relay cannot see, and boards its switch does not disconnect; where another relay would have to sit.
+
+    A place that another relay of the site sees is a note.
+    """
+    found = []
+    seats = {one.at: one for one in elsewhere}
     for place in places:
+        seat = seats.get(place.at)
         if not place.seen:
+            watched = seat is not None and bool(seat.relays)
             found.append(
                 Finding(
-                    "warning",
+                    "note" if watched else "warning",
                     f"break at {place.at}",
                     f"break at {place.at} is not seen: {place.why_not}",
-                    "place a relay at a board behind that break, or accept it in writing",
+                    EARTH_APART
+                    if place.why_not == TOGETHER
+                    else _where_to_sit(seat, "place a relay at a board behind that break"),
                     f"{place.harmful.percent:.1f} % of the load states harm equipment there",
                 )
             )
@@ -232,8 +281,26 @@ def places_findings(places: tuple[PlaceSummary, ...]) -> list[Finding]:
                     f"break at {place.at}",
                     f"break at {place.at} also harms {', '.join(place.not_disconnected)}, which this relay does not "
                     "disconnect",
-                    "place a relay there too, or accept it in writing",
+                    _where_to_sit(seat, "place a relay there too"),
                     "equipment there stays on the shifted volts",
                 )
             )
     return found
+
+
+def _where_to_sit(seat: Elsewhere | None, unknown: str) -> str:
+    """The board where the same device and settings would clear most of the harmful states of a break."""
+    if seat is None or not seat.best.cleared.of:
+        return f"{unknown}, or accept it in writing"
+    if seat.relays:
+        return f"judge {', '.join(seat.relays)}, which {'sees' if len(seat.relays) == 1 else 'see'} it (--relay)"
+    best = seat.best
+    if best.cleared.count == 0:
+        return (
+            f"place a relay behind that break with settings of its own (the same ones clear nothing at {best.board}), "
+            "or accept it in writing"
+        )
+    return (
+        f"place a relay at {best.board} that opens it (the same device and settings would clear "
+        f"{best.cleared.percent:.1f} % of the harmful states in time; derive them anew there), or accept it in writing"
+    )

@@ -1,19 +1,19 @@
 """What a lost neutral does on a site: every place it can break, every board, what the relay's terminals carry."""
 
-import numpy as np
-
 from relaycfg.model.break_results import BreakRow, BreakStudy, PlaceSummary
+from relaycfg.model.joint_results import JointSweep
+from relaycfg.model.place_results import HighestVoltage
 from relaycfg.model.site import NONE, Site
-from relaycfg.network import LoadStates, Network, connected, corners, join, least, sampled
+from relaycfg.network import Network, connected, sampled
 from relaycfg.study.break_rows import break_rows
 from relaycfg.study.evidence import Evidence
+from relaycfg.study.highest_voltage import highest_voltages
+from relaycfg.study.joint_sweep import sweeps
 from relaycfg.study.levels import NOMINAL, supply_levels
+from relaycfg.study.named_states import SAMPLE, WORST, states_named
 from relaycfg.study.place_summary import summarise, why_not_seen
 from relaycfg.study.scenarios import Scenarios
 from relaycfg.study.stages import ActiveStage
-
-SAMPLE = "sample"
-SINGLE_STATES = {"connected": connected, "least": least, "corners": corners}
 
 
 def breaks(
@@ -28,35 +28,30 @@ def breaks(
     """Break rows and place summaries without settings.
 
     ``at`` keeps one place (``none``: the sound network), ``joint_ohm`` puts a joint instead of an open break,
-    ``state`` keeps one kind of load states (``sample``: no rows, only the summaries), or shows one sampled state
-    again by its name, such as ``sample 17``. Raises ValueError for another name.
+    ``state`` keeps one kind of load states (``sample``: no rows, only the summaries), or shows states again by their
+    name, such as ``sample 17``, ``worst`` or ``on: A; B`` (see ``states_named``). Raises ValueError for another name.
     """
     network = Network(site)
     emf = supply_levels(site, network).nominal
     places = (NONE, *site.places) if at is None else (at,)
-    states = _rows_of(site, seed, state)
-    rows: tuple[BreakRow, ...] = ()
-    if states is not None:
-        rows = tuple(row for place in places for row in break_rows(site, network, place, states, emf, joint_ohm))
+    highest: tuple[HighestVoltage, ...] = ()
+    if state == WORST or (state in (None, SAMPLE) and joint_ohm is None):
+        highest = highest_voltages(site, network, emf, tuple(p for p in places if p != NONE))
+    rows: list[BreakRow] = []
+    for place in places:
+        states = states_named(site, place, seed, state, highest)
+        rows += break_rows(site, network, place, states, emf, joint_ohm) if states is not None else ()
     summaries: tuple[PlaceSummary, ...] = ()
+    joints: tuple[JointSweep, ...] = ()
     if state in (None, SAMPLE):
         drawn = sampled(site, samples, seed)
+        solved = {place: network.solve(place, drawn, emf, joint_ohm) for place in places if place != NONE}
         summaries = tuple(
-            summarise(site, network, place, network.solve(place, drawn, emf, joint_ohm), drawn, None, None, ())
-            for place in places
-            if place != NONE
+            summarise(site, network, place, found, drawn, None, None, ()) for place, found in solved.items()
         )
+        joints = sweeps(site, network, emf, drawn, solved, {}) if joint_ohm is None else ()
     seen = sum(not why_not_seen(site, network, place) for place in site.places)
-    return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows))
-
-
-def _rows_of(site: Site, seed: int, state: str | None) -> LoadStates | None:
-    """The load states to show one by one."""
-    if state == SAMPLE:
-        return None
-    if state is not None and state.startswith(f"{SAMPLE} "):
-        return sampled(site, 1, seed, start=int(state.removeprefix(f"{SAMPLE} ")))
-    return join(*(SINGLE_STATES[k](site) for k in SINGLE_STATES if state in (None, k)))
+    return BreakStudy(tuple(rows), summaries, seen, len(site.places), _notes(site, tuple(rows)), joints, highest)
 
 
 def break_study(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> BreakStudy:
@@ -74,7 +69,8 @@ def break_study(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> BreakStu
         for place in site.places
     )
     seen = sum(s.seen for s in summaries)
-    return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows))
+    highest = highest_voltages(site, network, evidence.levels.nominal, site.places)
+    return BreakStudy(rows, summaries, seen, len(site.places), _notes(site, rows), highest=highest)
 
 
 def _nominal_pairs(evidence: Evidence) -> dict[str, tuple[Scenarios, Scenarios]]:
@@ -90,15 +86,13 @@ def _notes(site: Site, rows: tuple[BreakRow, ...]) -> tuple[str, ...]:
     limit = site.judgement.balanced_pu * site.supply.nominal_v
     notes = []
     for row in rows:
-        board = row.boards.get(row.at)
-        still = board is not None and board.v0_v < limit
-        if row.joint_ohm is None and still and row.boards and not _dead(row):
+        if row.at == NONE or row.joint_ohm is not None or not row.boards:
+            continue
+        behind = [row.boards[name] for name in site.behind(row.at)]
+        v0_v = max(board.v0_v for board in behind)
+        if v0_v < limit and any(max(board.l_n_v) > 0 for board in behind):
             notes.append(
-                f"break at {row.at}, state {row.state}: V0 {board.v0_v if board else 0:.1f} V, the load behind it is "
-                "balanced or off; not detectable by any voltage element"
+                f"break at {row.at}, state {row.state}: V0 {v0_v:.1f} V, the load behind it is balanced or off; not "
+                "detectable by any voltage element"
             )
     return tuple(notes)
-
-
-def _dead(row: BreakRow) -> bool:
-    return bool(np.max(list(row.boards[row.at].l_n_v)) == 0.0)

@@ -41,7 +41,8 @@ def _result(
     tripped = sorted((p for p in plays if np.isfinite(p.trip_s).any()), key=lambda p: float(p.trip_s.min()))
     outcome: Literal["hold", "trip"] = "trip" if tripped else "hold"
     volts = np.concatenate([np.abs(s.tap[:-1])[None] for c in case.courses for s in c.segments])
-    v0 = max(float(abs(s.tap[:-1].mean())) for c in case.courses for s in c.segments)
+    geometry = evidence.site.supply.geometry
+    v0 = max(float(abs(geometry.displacement(s.tap[:-1]))) for c in case.courses for s in c.segments)
     by_volts, by_seconds = _margins(evidence, case, stages, securities)
     late = min((float(p.trip_s.min()) for p in plays), default=np.inf) > case.deadline_s
     return CaseResult(

@@ -5,15 +5,16 @@ from dataclasses import replace
 import numpy as np
 
 from relaycfg.model.cases import Case, Course, Segment
-from relaycfg.model.geometry import ComplexArray
+from relaycfg.model.geometry import ComplexArray, Geometry, three_phase
 from relaycfg.model.site import Fault, Motor, Site, UserCase
 from relaycfg.network import FaultKind, Network, connected, motor_start, short_circuit, tap
-from relaycfg.study.levels import Healthy, Levels
+from relaycfg.study.levels import Healthy, Levels, earth_reference
 from relaycfg.study.standing import FOR_EVER, HIGHEST_DISPLACEMENT, standing_cases
 from relaycfg.study.third_harmonic import ThirdHarmonic, third_harmonic, with_harmonic
 
 RECOVERY_STEPS = 24
 FAULT_KINDS: tuple[FaultKind, ...] = ("L-N", "L-PE", "L-L", "three-phase")
+TWO_LINE_FAULTS: tuple[FaultKind, ...] = ("L-N", "L-PE", "L-L", "L-L-N")
 STIFF_OHM = 0.001 + 0j
 """Stands for a bolted fault at the terminals of an ideal source, which would have no solution."""
 
@@ -51,33 +52,23 @@ def _with_third_harmonic(case: Case, harmonic: ThirdHarmonic) -> Case:
         else c
         for c in case.courses
     )
-    v0 = abs(courses[0].segments[0].tap[:-1].mean())
+    at, of = (-1, "N-PE") if harmonic.v0_v == 0.0 else (slice(None, -1), "V0")
+    course = next(c for c in courses if c.label.startswith(f"{HIGHEST_DISPLACEMENT} {of}"))
+    volts, added = abs(course.segments[0].tap[at].mean()), harmonic.v0_v or harmonic.n_pe_v
     return replace(
         case,
         courses=courses,
-        figures=f"{case.figures}; with {harmonic.v0_v:.1f} V of third harmonic V0 {v0:.1f} V",
+        figures=f"{case.figures}; with {added:.1f} V of third harmonic {of} {volts:.1f} V",
     )
 
 
 def _dip(site: Site, residual_percent: float, duration_s: float, source: str, status: str) -> Case:
-    """A dip by its residual voltage: on all lines, one, two, and as seen through a delta-star transformer.
-
-    The last two are the types C and D of Bollen's classification (from memory): no zero sequence, no swell.
-    """
-    unit = site.supply.geometry.phasors
-    h = residual_percent / 100
-    mean = unit[1:].mean()
-    rotation = unit[1:] - mean
-    shapes: dict[str, ComplexArray] = {
-        "all lines": unit * h,
-        "one line": np.concatenate([unit[:1] * h, unit[1:]]),
-        "two lines": np.concatenate([unit[:1], unit[1:] * h]),
-    }
-    if len(unit) > 2:
-        shapes["through delta-star, type C"] = np.concatenate([unit[:1], mean + h * rotation])
-        shapes["through delta-star, type D"] = np.concatenate([unit[:1] * h, h * mean + rotation])
+    """A dip by its residual voltage: on all lines, one, two, and as seen through a delta-star transformer."""
+    shapes = _dip_shapes(site.supply.geometry, residual_percent / 100)
+    through = ", and types C, D" if site.supply.geometry.of_star else ""
+    lines = "one, two, all lines" if site.supply.geometry.has_sequences else "one line, all lines"
     courses = tuple(_single(label, site.supply.nominal_v * shape, duration_s) for label, shape in shapes.items())
-    volts = site.supply.nominal_v * h
+    volts = site.supply.nominal_v * residual_percent / 100
     return Case(
         0,
         f"Dip to {residual_percent:g} %, {duration_s:g} s",
@@ -86,8 +77,38 @@ def _dip(site: Site, residual_percent: float, duration_s: float, source: str, st
         status,
         False,
         courses,
-        f"{volts:.1f} V for {duration_s:.3g} s on one, two, all lines, and types C, D",
+        f"{volts:.1f} V for {duration_s:.3g} s on {lines}{through}",
     )
+
+
+def _dip_shapes(geometry: Geometry, h: float) -> dict[str, ComplexArray]:
+    """Line-to-neutral phasors in units of nominal of every kind of dip to ``h``, by name.
+
+    Through a delta-star transformer dips are the types C and D of Bollen's classification (from memory): no zero
+    sequence, no swell. Two lines of a star may be any two of its three. A centre-tapped transformer dips both legs;
+    a dip of one leg comes from its own network.
+    """
+    unit = geometry.phasors
+    shapes = {"all lines": unit * h, "one line": np.concatenate([unit[:1] * h, unit[1:]])}
+    if geometry.has_sequences:
+        shapes["two lines"] = np.concatenate([unit[:1], unit[1:] * h])
+    if not geometry.of_star:
+        return shapes
+    star = three_phase("L1-L2-L3" if geometry.angles_deg[1] < 0 else "L1-L3-L2").phasors
+    mean = star[1:].mean()
+    rotation = star[1:] - mean
+    types = {
+        "through delta-star, type C": np.concatenate([star[:1], mean + h * rotation]),
+        "through delta-star, type D": np.concatenate([star[:1] * h, h * mean + rotation]),
+    }
+    for name, dipped in types.items():
+        if geometry.has_sequences:
+            shapes[name] = dipped
+            continue
+        for first in range(len(star)):
+            pair = [first, (first + 1) % len(star)]
+            shapes[f"{name}, lines {first + 1} and {pair[1] + 1} of its three"] = dipped[pair] * star[first].conj()
+    return shapes
 
 
 def _swell(site: Site, percent: float, duration_s: float, source: str, status: str) -> Case:
@@ -121,11 +142,11 @@ def _interruption(site: Site) -> Case:
 
 
 def _motor_start(site: Site, network: Network, levels: Levels, board: str, index: int, motor: Motor) -> Case:
-    at = network.boards.index(board)
+    at, earth = network.boards.index(board), earth_reference(site)
     courses = []
     for name, emf in (("lower limit", levels.lower), ("upper limit", levels.upper)):
         solved = motor_start(network, site, index, connected(site), emf)
-        courses.append(Course(f"supply at its {name}", (Segment(motor.start_s, tap(solved, at)[0]),)))
+        courses.append(Course(f"supply at its {name}", (Segment(motor.start_s, tap(solved, at, earth)[0]),)))
     lowest = float(np.abs(courses[0].segments[0].tap[:-1]).min())
     return Case(
         0,
@@ -140,23 +161,25 @@ def _motor_start(site: Site, network: Network, levels: Levels, board: str, index
 
 
 def _fault(site: Site, levels: Levels, board: str, fault: Fault) -> Case:
-    """Every kind at the far and near end and both limits; L-PE only where the faulted board has a PE."""
+    """Every kind at the far and near end and both limits."""
+    geometry = site.supply.geometry
     stiff = site.source.line_ohm == 0 and all(site.board(b).cable is None for b in site.path(fault.board))
     ends = {"far": fault.circuit_ohm, "near": 0j}
     if stiff:
         ends = {where: ohm if ohm != 0 else STIFF_OHM for where, ohm in ends.items()}
     pe = short_circuit(site, fault.board, "L-N", ends["far"], levels.upper)[fault.board][-1]
-    kinds = tuple(k for k in FAULT_KINDS if k != "L-PE" or not np.isnan(pe))
     # Without loads the network is linear, so the lower limit is the upper one scaled.
     lower = abs(levels.lower[0]) / abs(levels.upper[0])
     courses = []
     for where, ohm in ends.items():
-        for kind in kinds:
-            at_upper = short_circuit(site, fault.board, kind, ohm, levels.upper)[board]
+        for kind, line, name in _fault_kinds(geometry, not np.isnan(pe)):
+            earth = earth_reference(site)
+            at_upper = short_circuit(site, fault.board, kind, ohm, levels.upper, earth, line)[board]
             for level, volts in (("upper limit", at_upper), ("lower limit", at_upper * lower)):
-                courses.append(Course(f"{kind} {where} end, {level}", (Segment(fault.clearing_s, volts),)))
+                courses.append(Course(f"{name} {where} end, {level}", (Segment(fault.clearing_s, volts),)))
     magnitudes = np.abs(np.stack([c.segments[0].tap[:-1] for c in courses]))
-    v0 = max(abs(c.segments[0].tap[:-1].mean()) for c in courses)
+    v0 = max(abs(geometry.displacement(c.segments[0].tap[:-1])) for c in courses)
+    shift = f"V0 up to {v0:.1f} V, " if geometry.has_displacement else ""
     return Case(
         0,
         f"Short circuit behind {fault.board}, {fault.clearing_s:g} s",
@@ -165,8 +188,24 @@ def _fault(site: Site, levels: Levels, board: str, fault: Fault) -> Case:
         fault.status,
         False,
         tuple(courses),
-        f"{magnitudes.min():.1f} to {magnitudes.max():.1f} V, V0 up to {v0:.1f} V, cleared in {fault.clearing_s:.3g} s",
+        f"{magnitudes.min():.1f} to {magnitudes.max():.1f} V, {shift}cleared in {fault.clearing_s:.3g} s",
     )
+
+
+def _fault_kinds(geometry: Geometry, has_pe: bool) -> list[tuple[FaultKind, int, str]]:
+    """Kinds of fault with the index of the line they are on and their name; L-PE only where there is a PE.
+
+    With three lines a fault of the first shows both others; with two, either line is tried.
+    """
+    found: list[tuple[FaultKind, int, str]] = []
+    for kind in FAULT_KINDS if geometry.has_sequences else TWO_LINE_FAULTS:
+        if kind == "L-PE" and not has_pe:
+            continue
+        if geometry.has_sequences or kind not in ("L-N", "L-PE"):
+            found.append((kind, 0, kind))
+        else:
+            found += [(kind, line, kind.replace("L", name, 1)) for line, name in enumerate(geometry.names)]
+    return found
 
 
 def _generator_steps(site: Site) -> list[Case]:
@@ -209,14 +248,16 @@ def _energising(site: Site) -> Case:
         reference.pole_late_status,
         False,
         (_single("one pole late", late, reference.pole_late_s),),
-        f"0 / U / U for {reference.pole_late_s:.3g} s, then all lines",
+        f"{_one_missing(site)} for {reference.pole_late_s:.3g} s, then all lines",
     )
 
 
 def _lost_reading(site: Site) -> Case:
     missing = sound_tap(site)
     missing[0] = 0
-    v0 = abs(missing[:-1].mean())
+    v0 = abs(site.supply.geometry.displacement(missing[:-1]))
+    shown = f", V0 {v0:.1f} V" if site.supply.geometry.has_displacement else ""
+    reads = _one_missing(site)
     return Case(
         0,
         "Sensing fuse open, or a line lost upstream",
@@ -224,9 +265,14 @@ def _lost_reading(site: Site) -> Case:
         "own arithmetic",
         "own",
         False,
-        (Course("0 / U / U", (Segment(FOR_EVER, missing),)),),
-        f"0 / U / U for ever, V0 {v0:.1f} V; not a lost neutral, line-to-line volts tell",
+        (Course(reads, (Segment(FOR_EVER, missing),)),),
+        f"{reads} for ever{shown}; not a lost neutral, line-to-line volts tell",
     )
+
+
+def _one_missing(site: Site) -> str:
+    """Line-to-neutral volts without the first line, such as 0 / U / U."""
+    return " / ".join(["0", *("U" for _ in site.supply.geometry.names[1:])])
 
 
 def _single(label: str, l_n: ComplexArray, duration_s: float) -> Course:

@@ -54,4 +54,5 @@ def _ladder(site: Site, relay: Relay, cases: tuple[Case, ...], element: Element)
         supply.geometry.line_to_line_ratio,
         runs_of(cases, element, relay.device, supply.geometry, supply.frequency_hz),
         site.judgement,
+        len(supply.geometry.names),
     )

@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from relaycfg.model.device import Element, Function, Reset
-from relaycfg.model.geometry import FloatArray
+from relaycfg.model.geometry import FloatArray, three_phase
 from relaycfg.model.judgement import Judgement
 from relaycfg.model.site import Relay
 from relaycfg.relay import pickups_least_sensitive, pickups_most_sensitive, shortest_delay, total_clearing
@@ -28,6 +28,7 @@ class Ladder:
     line_to_line_ratio: float
     runs: Runs
     judgement: Judgement = field(default_factory=Judgement)
+    lines: int = len(three_phase().names)
 
     @cached_property
     def pickups(self) -> FloatArray:
@@ -69,7 +70,7 @@ class Ladder:
         """One unit of margin in the element's own severity: 1 percent of U0 as it counts volts, 1 point for 47."""
         if self.element.function is Function.UNBALANCE:
             return 1.0
-        factor = {"3v0": 3.0, "l-l": self.line_to_line_ratio}.get(self.element.quantity, 1.0)
+        factor = {"3v0": self.lines, "l-l": self.line_to_line_ratio}.get(self.element.quantity, 1.0)
         return 0.01 * self.nominal_v * factor
 
     @property

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from relaycfg.model.geometry import ComplexArray
-from relaycfg.model.site import NONE, SOURCE, Site
+from relaycfg.model.site import NONE, SOURCE, EarthReference, Site
 from relaycfg.network import LoadStates, Network, Solved, connected, corners, healthy_emf, join, least, tap
 
 SCALE_STEPS = 6
@@ -63,6 +63,11 @@ def _at_limit(site: Site, network: Network, state: LoadStates, limit_v: float, h
     return healthy_emf(site, scale)
 
 
+def earth_reference(site: Site) -> EarthReference:
+    """The earth that the last column of every tap is measured against: that of the site's relay."""
+    return "local PE" if site.relay is None else site.relay.earth_reference
+
+
 def healthy_taps(site: Site, network: Network, levels: Levels, sample: LoadStates, board: str) -> Healthy:
     """What the sound network shows at ``board`` in the named states and the sample.
 
@@ -70,15 +75,15 @@ def healthy_taps(site: Site, network: Network, levels: Levels, sample: LoadState
     phase at ``band_at`` (linear; the ratio differs from 1 by the voltage drop only).
     """
     states = join(connected(site), least(site), corners(site), sample)
-    index = network.boards.index(board)
+    index, earth = network.boards.index(board), earth_reference(site)
     upper = network.solve(NONE, states, levels.upper)
     lower = network.solve(NONE, states, levels.lower)
     no_load = network.solve(NONE, states, levels.nominal)
     return Healthy(
         states.names,
-        tap(upper, index) * _ratio(site, network, upper, site.supply.high_v, highest=True),
-        tap(lower, index) * _ratio(site, network, lower, site.supply.low_v, highest=False),
-        tap(no_load, index),
+        tap(upper, index, earth) * _ratio(site, network, upper, site.supply.high_v, highest=True),
+        tap(lower, index, earth) * _ratio(site, network, lower, site.supply.low_v, highest=False),
+        tap(no_load, index, earth),
     )
 
 

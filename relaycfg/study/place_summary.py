@@ -6,7 +6,7 @@ from relaycfg.model.break_results import ElementSight, Harm, Operation, Percenti
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
 from relaycfg.model.site import Relay, Site
-from relaycfg.network import LoadStates, Network, Solved, corners, healthy_emf
+from relaycfg.network import LoadStates, Network, Solved, corners, healthy_emf, tap
 from relaycfg.study.deadlines import high_deadline_s, low_deadline_s
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.scenarios import Scenarios, seen_places
@@ -16,6 +16,7 @@ from relaycfg.study.stages import ActiveStage, operating_s
 HARMS: tuple[Harm, ...] = ("none", "high volts", "low volts", "both")
 OPERATIONS: tuple[Operation, ...] = ("in time", "late", "none")
 WORST_SHOWN = 3
+TOGETHER = "N and PE move together: the break is upstream of the split, N against PE stays near 0"
 STILL_V = 0.001
 
 
@@ -26,25 +27,29 @@ def why_not_seen(site: Site, network: Network, place: str) -> str:
         return "no relay is described for this site"
     if place not in seen_places(site, relay):
         return f"the break is not upstream of the relay's tap at {relay.measures_at}"
+    if not relay.device.elements:
+        return "no element of the device has anything to measure in this system"
     if all(e.line_to_line_only for e in relay.device.elements):
         return "the device measures line to line only; a lost neutral does not move line-to-line volts"
-    if _only_n_to_pe(relay) and not _n_pe_moves(site, network, place):
-        return "N and PE move together: the break is upstream of the split, N against PE stays near 0"
+    if only_n_to_earth(relay) and not _n_moves(site, network, place):
+        if relay.earth_reference == "own electrode":
+            return "the electrode stays on the loads' side of this break: the lines move against earth, N does not"
+        return TOGETHER
     return ""
 
 
-def _only_n_to_pe(relay: Relay) -> bool:
-    """Whether N against PE is the only quantity of the device that a lost neutral could move."""
+def only_n_to_earth(relay: Relay) -> bool:
+    """Whether N against earth is the only quantity of the device that a lost neutral could move."""
     others = [e for e in relay.device.elements if not e.line_to_line_only and e.function is not Function.DISPLACEMENT]
     return relay.device.displacement_from == "n-to-earth" and not others
 
 
-def _n_pe_moves(site: Site, network: Network, place: str) -> bool:
-    """Whether any corner of the load states moves N against PE at the relay's board."""
+def _n_moves(site: Site, network: Network, place: str) -> bool:
+    """Whether any corner of the load states moves N against the relay's earth at its board."""
     assert site.relay is not None
     solved = network.solve(place, corners(site), healthy_emf(site))
-    n_pe = np.abs(solved.n_pe[network.boards.index(site.relay.measures_at)])
-    return bool(np.nan_to_num(n_pe).max() > STILL_V)
+    taps = tap(solved, network.boards.index(site.relay.measures_at), site.relay.earth_reference)
+    return bool(np.nan_to_num(np.abs(taps[:, -1])).max() > STILL_V)
 
 
 def summarise(
@@ -151,7 +156,8 @@ def _percentiles(site: Site, network: Network, highest: FloatArray, solved: Solv
     rows = [("highest line-to-neutral, any board", highest)]
     if site.relay is not None:
         tap_l_n = solved.l_n[network.boards.index(site.relay.measures_at)]
-        rows.append(("V0 at the relay", np.abs(tap_l_n.mean(axis=0))))
+        if site.supply.geometry.has_displacement:
+            rows.append(("V0 at the relay", np.abs(site.supply.geometry.displacement(tap_l_n.T))))
         rows.append(("lowest line-to-neutral at the relay", np.abs(tap_l_n).min(axis=0)))
     there = solved.converged
     found = []

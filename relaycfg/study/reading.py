@@ -1,32 +1,21 @@
 """What three line-to-neutral readings (and, if given, three line-to-line ones) say about neutral, lines and supply."""
 
 from dataclasses import dataclass
-from typing import Literal
 
 import numpy as np
 
 from relaycfg.model.geometry import FloatArray, three_phase
 from relaycfg.model.reading import Cause, Reading
+from relaycfg.study import reading_patterns as patterns
 from relaycfg.study import reading_words as words
+from relaycfg.study.reading_patterns import EVEN_SHARE, SLIGHT_SHARE, Known, Pattern
 
 Volts3 = tuple[float, float, float]
-Pattern = Literal["dead", "two lines low", "one line low", "lines uneven", "no fit", "shifted", "slight", "even"]
 
 METER_SHARE = 0.01
 """Error of a hand meter allowed for in the band of the displacement (own choice)."""
 SUPPLY_SHARE = 0.10
 """Half-width of the supply band assumed where no line-to-line volts are given (own choice, after EN 50160)."""
-ABSENT_SHARE = 0.2
-"""Share of nominal below which a line counts as absent (own choice)."""
-EVEN_SHARE = 0.03
-"""Largest deviation from their mean of line-to-line volts that still count as even (own choice)."""
-SLIGHT_SHARE, SHIFTED_SHARE = 0.03, 0.07
-"""Displacement over nominal: below the first nothing is shown; a sound supply may reach the second (15 V at 230 V)."""
-ALLOWED_SHARE = 0.087
-"""Displacement over nominal, the lines taken as a third of a turn apart, that the supply itself may bring: 15 V from
-207/253/253 V, inside EN 50160's +/-10 % of 230 V, and a little more (20 V; own choice)."""
-PLAUSIBLE = (0.8, 1.2)
-"""Source volts over nominal between which a supply is believed (own choice)."""
 
 
 @dataclass(frozen=True)
@@ -49,7 +38,7 @@ def read_meter(l_n: Volts3, l_l: Volts3 | None, nominal_v: float) -> Reading:
     volts = np.array(l_n, float)
     source_v = None if l_l is None else float(np.sqrt(np.mean(np.square(l_l)))) / three_phase().line_to_line_ratio
     shift = locate(volts, source_v)
-    pattern = pattern_of(volts, l_l, nominal_v, shift)
+    pattern = _pattern(volts, l_l, nominal_v)
     shown = shift if pattern in ("shifted", "slight", "even") else None
     low_v, high_v = _band(volts, shown, source_v, nominal_v)
     return Reading(
@@ -71,41 +60,51 @@ def read_meter(l_n: Volts3, l_l: Volts3 | None, nominal_v: float) -> Reading:
 
 
 def locate(volts: FloatArray, source_v: float | None) -> Shift | None:
-    """Neutral position from three magnitudes [V]; the source's volts too where they are not given.
-
-    Of the two sources that fit, the higher one: its neutral stands nearer to the star point. Where none fits, the
-    nearest, with its misfit. None without any volts.
-    """
-    phasors = three_phase().phasors
-    square = np.square(volts)
-    mean_square = float(square.mean())
-    moment = complex(-(phasors * square).mean())
-    if source_v is None:
-        root = max(0.0, mean_square**2 / 4 - abs(moment) ** 2)
-        source_v = float(np.sqrt(mean_square / 2 + np.sqrt(root)))
-    if source_v == 0:
+    """One reading [3] placed by ``reading_patterns.locate``; None without any volts."""
+    given = None if source_v is None else np.array([source_v])
+    found = patterns.locate(volts[None], given)
+    if found.source_v[0] == 0:
         return None
-    neutral_v = moment / source_v
-    misfit_v = float(np.max(np.abs(np.abs(source_v * phasors - neutral_v) - volts)))
-    return Shift(source_v, neutral_v, misfit_v)
+    return Shift(float(found.source_v[0]), complex(found.neutral_v[0]), float(found.misfit_v[0]))
 
 
-def pattern_of(volts: FloatArray, l_l: Volts3 | None, nominal_v: float, shift: Shift | None) -> Pattern:
-    """Which of the patterns the readings belong to."""
-    absent = int((volts < ABSENT_SHARE * nominal_v).sum())
-    if absent == len(volts):
-        return "dead"
-    uneven = l_l is not None and np.max(np.abs(np.array(l_l) / np.mean(l_l) - 1)) > EVEN_SHARE
-    believed = shift is not None and PLAUSIBLE[0] <= shift.source_v / nominal_v <= PLAUSIBLE[1]
-    fits = believed and shift is not None and shift.misfit_v <= EVEN_SHARE * nominal_v
-    if shift is None or not fits or uneven:
-        if absent:
-            return "one line low" if absent == 1 else "two lines low"
-        return "lines uneven" if uneven else "no fit"
-    share = abs(shift.neutral_v) / nominal_v
-    if share < SLIGHT_SHARE:
-        return "even"
-    return "slight" if share < SHIFTED_SHARE else "shifted"
+def first_causes(l_n: FloatArray, l_l: FloatArray | None, nominal_v: float) -> list[str]:
+    """The first cause ``read_meter`` names for each of many readings [readings, 3].
+
+    Readings that agree in all that the first cause depends on are judged once.
+    """
+    source_v = None if l_l is None else np.sqrt(np.square(l_l).mean(axis=-1)) / three_phase().line_to_line_ratio
+    shifts = patterns.locate(l_n, source_v)
+    keys = np.stack(
+        [
+            patterns.pattern_of(l_n, l_l, nominal_v, shifts),
+            patterns.known_of(l_n, l_l, nominal_v),
+            np.ones(len(l_n), int) if l_l is None else patterns.even_lines(l_l),
+            np.argmin(l_n, axis=-1),
+            np.abs(shifts.source_v / nominal_v - 1) > SUPPLY_SHARE,
+            shifts.source_v > nominal_v,
+        ],
+        axis=-1,
+    )
+    _, first, kind = np.unique(keys, axis=0, return_index=True, return_inverse=True)
+    names = []
+    for k in first:
+        lines = None if l_l is None else _volts3(l_l[k])
+        names.append(read_meter(_volts3(l_n[k]), lines, nominal_v).causes[0].name)
+    return [names[k] for k in kind.ravel()]
+
+
+def _volts3(values: FloatArray) -> Volts3:
+    first, second, third = (float(v) for v in values)
+    return first, second, third
+
+
+def _pattern(volts: FloatArray, l_l: Volts3 | None, nominal_v: float) -> Pattern:
+    """Which of the patterns one reading belongs to."""
+    lines = None if l_l is None else np.array([l_l])
+    source_v = None if lines is None else np.sqrt(np.square(lines).mean(axis=-1)) / three_phase().line_to_line_ratio
+    shifts = patterns.locate(volts[None], source_v)
+    return patterns.PATTERNS[int(patterns.pattern_of(volts[None], lines, nominal_v, shifts)[0])]
 
 
 def _band(
@@ -143,14 +142,10 @@ def _steps(pattern: Pattern, volts: FloatArray, l_l: Volts3 | None, nominal_v: f
     return tuple(step for step in words.CHECK_FIRST[pattern] if l_l is None or step != words.MEASURE_LINES)
 
 
-def _known(volts: FloatArray, l_l: Volts3 | None, nominal_v: float) -> words.Known:
+def _known(volts: FloatArray, l_l: Volts3 | None, nominal_v: float) -> Known:
     """What the readings say about the lines themselves."""
-    if l_l is not None:
-        return "lines even"
-    if volts.max() < (1 + SLIGHT_SHARE) * nominal_v:
-        return "none high"
-    as_even = abs(three_phase().phasors @ volts) / len(volts)
-    return "supply may" if as_even < ALLOWED_SHARE * nominal_v else "lines unknown"
+    lines = None if l_l is None else np.array([l_l])
+    return patterns.KNOWN[int(patterns.known_of(volts[None], lines, nominal_v)[0])]
 
 
 def _causes(

@@ -1,14 +1,10 @@
 """Causes, first checks and cautions that go with each pattern of meter readings."""
 
-from typing import Literal
-
 import numpy as np
 
 from relaycfg.model.geometry import FloatArray
 from relaycfg.model.reading import Cause
-
-Known = Literal["lines even", "lines unknown", "none high", "supply may"]
-"""What the readings say about the lines themselves, where the neutral looks moved."""
+from relaycfg.study.reading_patterns import Known
 
 TIME_TELLS = "it would be cleared within seconds; a lasting reading rules it out"
 NEUTRAL_SOUND = "without displacement the readings cannot tell a sound neutral from a lost one under equal loads"

@@ -80,7 +80,7 @@ def judge(site: Site, relay: Relay, network: Network, place: str, level: str, mo
     highest_v = highest.max(axis=0)
     lowest_v = magnitudes[low_boards].min(axis=(0, 1)) if low_boards else np.full_like(highest_v, np.inf)
     high_s, low_s = high_deadline_s(equipment, highest_v), low_deadline_s(equipment, lowest_v)
-    taps = tap(solved, network.boards.index(relay.measures_at))
+    taps = tap(solved, network.boards.index(relay.measures_at), relay.earth_reference)
     return Scenarios(
         place,
         level,
@@ -96,6 +96,6 @@ def judge(site: Site, relay: Relay, network: Network, place: str, level: str, mo
         highest_v,
         np.array(behind)[np.argmax(highest, axis=0)],
         solved.converged,
-        taps[:, :-1].mean(axis=-1),
+        -geometry.neutral_shift(taps[:, :-1]),
         taps,
     )

@@ -105,7 +105,7 @@ def _tap_at(evidence: Evidence, active: ActiveStage, level: float) -> ComplexArr
         if evidence.relay.device.displacement_from == "n-to-earth":
             tap[-1] = level
             return tap
-        change = len(geometry.names) * level / (3.0 if quantity == "3v0" else 1.0)
+        change = level if quantity == "3v0" else len(geometry.names) * level
         if change <= nominal:
             tap[0] -= change * geometry.phasors[0]
         else:
@@ -123,7 +123,8 @@ def _injection(evidence: Evidence, active: ActiveStage, line: str, level: float,
     if active.ladder.element.quantity == "l-l":
         return f"all lines from {nominal:g} V {how} to {tap[0]:.1f} V, {level:.1f} V between lines"
     if active.function is Function.DISPLACEMENT and evidence.relay.device.displacement_from == "n-to-earth":
-        return f"N against PE from 0 V {how} to {tap[-1]:.1f} V"
+        earth = "PE" if evidence.relay.earth_reference == "local PE" else "the terminal of its own electrode"
+        return f"N against {earth} from 0 V {how} to {tap[-1]:.1f} V"
     if len(geometry.names) > 1 and tap[1] == 0:
         return f"other lines at 0 V, {line} from 0 V {how} to {tap[0]:.1f} V"
     return f"all lines {nominal:g} V, then {line} {how} to {tap[0]:.1f} V"

@@ -3,6 +3,7 @@
 import numpy as np
 
 from relaycfg.model.device import Function, SettableRange
+from relaycfg.model.reconnect_results import Reconnection
 from relaycfg.model.results import CaseResult, Finding
 from relaycfg.model.settings import Settings, Stage
 from relaycfg.study.evidence import Evidence
@@ -10,6 +11,8 @@ from relaycfg.study.margins import Security
 from relaycfg.study.ride_through import ride_through
 from relaycfg.study.settle import Settled
 from relaycfg.study.stages import ActiveStage
+
+NO_ELEMENT = "the device has no such element"
 
 
 def turn(evidence: Evidence, old: Stage | None, new: Stage) -> str:
@@ -142,7 +145,8 @@ def device_limits(evidence: Evidence, settings: Settings) -> list[Finding]:
         if not stage.on:
             continue
         if ladder is None:
-            found.append(_limit(stage, "the device has no such element", "remove this stage"))
+            why = evidence.relay.device.why_off(stage.function)
+            found.append(_unusable(stage, why) if why else _limit(stage, NO_ELEMENT, "remove this stage"))
             continue
         element = ladder.element
         if stage.number > element.stages:
@@ -160,6 +164,12 @@ def device_limits(evidence: Evidence, settings: Settings) -> list[Finding]:
     return found
 
 
+def _unusable(stage: Stage, why: str) -> Finding:
+    """A stage that is on although the site's system has no quantity for its element."""
+    left = "it acts on a sound supply, or never, and on no lost neutral for certain"
+    return Finding("exception", stage.label, f"{stage.label} is on: {why}", f"switch {stage.label} off", left)
+
+
 def _off_step(stage: Stage, what: str, value: float, settable: SettableRange) -> Finding:
     span = f"{settable.low:g} to {settable.high:g} by {settable.step:g}"
     nearest = settable.values[np.argmin(np.abs(settable.values - value))]
@@ -170,7 +180,7 @@ def _limit(stage: Stage, sentence: str, do: str) -> Finding:
     return Finding("exception", stage.label, f"{stage.label}: {sentence}", do, "it cannot be set as it stands")
 
 
-def rules(evidence: Evidence, settings: Settings, existing: bool) -> list[Finding]:
+def rules(evidence: Evidence, settings: Settings, existing: bool, again: Reconnection) -> list[Finding]:
     """Rules around the settings: reconnection, inputs that changed, poles."""
     found = []
     if settings.after_any_trip != "by hand":
@@ -179,7 +189,7 @@ def rules(evidence: Evidence, settings: Settings, existing: bool) -> list[Findin
                 "exception",
                 "reconnect",
                 "the relay reconnects by itself: with the load off the volts look healthy, and it closes onto the "
-                "same break",
+                f"same break{_cycles(again)}",
                 "set reconnection after any trip to by hand",
                 "it pumps the board on and off",
             )
@@ -216,3 +226,11 @@ def rules(evidence: Evidence, settings: Settings, existing: bool) -> list[Findin
             )
         )
     return found
+
+
+def _cycles(again: Reconnection) -> str:
+    """How often it pumps, in words."""
+    if not again.most_per_hour:
+        return ""
+    limit = "" if again.attempts is None else f", until it locks out after {again.attempts} closings"
+    return f", up to {again.most_per_hour:.0f} trips an hour at {again.wait_s:g} s wait{limit}"

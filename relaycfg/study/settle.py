@@ -56,7 +56,7 @@ def settle(evidence: Evidence) -> Settled:
         evidence.relay.name,
         evidence.relay.device.name,
         evidence.site.digest,
-        tuple(s for f in ORDER if f in chosen for s in _stages(evidence.ladders[f], chosen[f])),
+        tuple(s for f in ORDER for s in _element_stages(evidence, f, chosen)),
         evidence.site.judgement.inhibit_s,
         "by hand",
     )
@@ -151,6 +151,14 @@ def _with_detection(ladder: Ladder, rungs: tuple[Rung, ...], floor: float) -> tu
     return (detection, *rungs)
 
 
+def _element_stages(evidence: Evidence, function: Function, chosen: dict[Function, tuple[Rung, ...]]) -> list[Stage]:
+    """The stages of one element; all off where the site's system has no quantity for it."""
+    if function in chosen:
+        return _stages(evidence.ladders[function], chosen[function])
+    left = [x.element for x in evidence.relay.device.left_out if x.element.function is function]
+    return [Stage(function, n + 1, False, quantity=e.quantity) for e in left for n in range(e.stages)]
+
+
 def _stages(ladder: Ladder, rungs: tuple[Rung, ...]) -> list[Stage]:
     element = ladder.element
     stages = []
@@ -183,7 +191,7 @@ def _why_off(
     ladder = evidence.ladders.get(function)
     little = f"{100 * (1 - evidence.site.judgement.cover_kept):.3g} %"
     if ladder is None:
-        return "the device does not have it"
+        return evidence.relay.device.why_off(function) or "the device does not have it"
     if chosen[function]:
         return f"a further stage would clear less than {little} more"
     if not any(w.any() for w in wanted):

@@ -35,7 +35,7 @@ def _off(evidence: Evidence, stage: Stage, reason: str) -> StageResult:
     if stage.on and stage.action == "alarm":
         reason = "signals only, disconnects nothing"
     elif stage.on:
-        reason = "the device does not have this element"
+        reason = evidence.relay.device.why_off(stage.function) or "the device does not have this element"
     return StageResult(stage, None, _base(evidence), None, unit, 0.0, 0.0, 0.0, True, (), None, None, reason)
 
 

@@ -3,10 +3,10 @@
 import numpy as np
 
 from relaycfg.model.cases import Case, Course, Segment
-from relaycfg.model.geometry import ComplexArray, Geometry
+from relaycfg.model.geometry import ComplexArray, FloatArray, Geometry
 from relaycfg.model.site import Site
-from relaycfg.relay import measured_quantities
-from relaycfg.study.levels import Healthy
+from relaycfg.relay import definitions, measured_quantities
+from relaycfg.study.levels import Healthy, earth_reference
 
 FOR_EVER = float("inf")
 ANGLE_STEPS = 24
@@ -28,6 +28,9 @@ def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
     free = int(np.argmax(np.abs(_l_n(healthy.no_load)).max(axis=-1)))
     least, most = float(np.abs(lower[low]).min()), float(np.abs(upper[high]).max())
     band, known = f"{supply.band_name}: {supply.band_source}", _known(supply.band_status)
+    unbalanced = _unbalanced(site, healthy, least, most)
+    sides = [f"V2/V1 {supply.unbalance_percent:g} %"] if geometry.of_star else []
+    sides.append(f"displacement {supply.displacement_percent:g} %")
     return [
         _standing(
             "Supply at its upper limit",
@@ -51,9 +54,9 @@ def standing_cases(site: Site, healthy: Healthy, board: str) -> list[Case]:
         ),
         _standing(
             "Most unbalanced healthy state",
-            f"network; supply V2/V1 {supply.unbalance_percent:g} %, displacement {supply.displacement_percent:g} %",
-            _unbalanced(site, healthy, least, most),
-            _unbalance_figures(geometry, _unbalanced(site, healthy, least, most)),
+            f"network; supply {', '.join(sides)}",
+            unbalanced,
+            _unbalance_figures(geometry, unbalanced),
         ),
     ]
 
@@ -62,53 +65,75 @@ def _unbalanced(site: Site, healthy: Healthy, least_v: float, most_v: float) -> 
     """Courses of highest displacement (V0, and N against PE) and of highest unbalance by each definition.
 
     The supply's V2 is taken of each state's own V1 and tried at every angle, since the worst one depends on the state.
+    Where the system has no V0, the states that deviate most from line to neutral stand for those of highest V0.
     """
     geometry = site.supply.geometry
     names = healthy.names * 2
     taps = _displaced(site, np.concatenate([healthy.upper, healthy.lower]))
-    v0 = np.abs(_l_n(taps).mean(axis=-1))
-    n_pe = np.nan_to_num(np.abs(taps[:, -1]))
+    uneven = _unevenness(geometry, taps)
+    ranked = {"V0": uneven} if geometry.has_displacement else {}
+    ranked["N-PE"] = np.nan_to_num(np.abs(taps[:, -1]))
     courses = [
-        _course(f"{HIGHEST_DISPLACEMENT} {what}, state {names[k]}", _within(taps[k], least_v, most_v))
-        for what, k in (("V0", int(np.argmax(v0))), ("N-PE", int(np.argmax(n_pe))))
+        _course(f"{HIGHEST_DISPLACEMENT} {what}, state {names[k]}", _within(geometry, taps[k], least_v, most_v))
+        for what, k in ((what, int(np.argmax(volts))) for what, volts in ranked.items())
     ]
-    candidates = np.argsort(v0)[::-1][:UNBALANCED_STATES]
+    candidates = np.argsort(uneven)[::-1][:UNBALANCED_STATES]
     turns = np.exp(2j * np.pi * np.arange(ANGLE_STEPS) / ANGLE_STEPS)
     _, v1, _ = geometry.sequences(_l_n(taps[candidates]))
     negative = np.zeros((len(candidates), ANGLE_STEPS, len(geometry.names) + 1), complex)
     size = site.supply.unbalance_percent / 100 * np.abs(v1)
     negative[..., :-1] = size[:, None, None] * turns[:, None] * geometry.phasors.conj()
     tried = taps[candidates][:, None, :] + negative
-    for name, figures in measured_quantities(geometry, tried)["unbalance_percent"].items():
+    unbalance = measured_quantities(geometry, tried)["unbalance_percent"]
+    for name, figures in ((name, unbalance[name]) for name in definitions(geometry)):
         k, angle = np.unravel_index(int(np.argmax(figures)), figures.shape)
         label = f"highest {name}, state {names[candidates[k]]}"
-        courses.append(_course(label, _within(tried[k, angle], least_v, most_v)))
+        courses.append(_course(label, _within(geometry, tried[k, angle], least_v, most_v)))
     return tuple(courses)
+
+
+def _unevenness(geometry: Geometry, taps: ComplexArray) -> FloatArray:
+    """What the taps are ranked by: their V0, or without one their deviation from line to neutral."""
+    measured = measured_quantities(geometry, taps)
+    figures: FloatArray = measured["unbalance_percent"]["line-to-neutral deviation"]
+    return measured["v0_v"] if geometry.has_displacement else figures
 
 
 def _displaced(site: Site, taps: ComplexArray) -> ComplexArray:
     """The taps [states, lines + 1] with the supply's own displacement added where it makes V0 largest.
 
-    It moves N against the local PE only where PE is an electrode of its own (TT).
+    Without a V0 it is added along the line from the lower to the higher of two lines, which parts them most.
+    It moves N against the earth of the tap only where that is an electrode of its own (TT, or the relay's choice).
     """
-    v0 = _l_n(taps).mean(axis=-1, keepdims=True)
-    direction = np.where(np.abs(v0) > 0, v0 / np.maximum(np.abs(v0), TINY_V), 1.0)
-    added = direction * site.supply.displacement_percent / 100 * site.supply.nominal_v
+    geometry = site.supply.geometry
+    if geometry.has_displacement:
+        along = geometry.displacement(_l_n(taps))[..., np.newaxis]
+    else:
+        volts = np.abs(_l_n(taps))
+        along = ((volts[:, :1] - volts[:, -1:]) * (geometry.phasors[0] - geometry.phasors[-1])).astype(complex)
+    added = _direction(along) * site.supply.displacement_percent / 100 * site.supply.nominal_v
     moved = taps.copy()
     moved[:, :-1] += added
-    if site.supply.earthing == "TT":
+    if site.supply.earthing == "TT" or earth_reference(site) == "own electrode":
         n_pe = moved[:, -1:]
-        moved[:, -1:] += np.abs(added) * np.where(np.abs(n_pe) > 0, n_pe / np.maximum(np.abs(n_pe), TINY_V), 1.0)
+        moved[:, -1:] += np.abs(added) * _direction(n_pe)
     return moved
 
 
-def _within(tap: ComplexArray, least_v: float, most_v: float) -> ComplexArray:
+def _direction(phasors: ComplexArray) -> ComplexArray:
+    """Unit phasors along the given ones; along the reference where there is nothing but rounding."""
+    size = np.abs(phasors)
+    return np.where(size > TINY_V, phasors / np.maximum(size, TINY_V), 1.0)
+
+
+def _within(geometry: Geometry, tap: ComplexArray, least_v: float, most_v: float) -> ComplexArray:
     """All but the zero sequence scaled until every line lies between the standing extremes, as far as both allow.
 
+    Without a zero sequence everything is scaled.
     Unbalance lies inside the band, not on top of it: a line pulled below the lower limit means a higher supply.
     """
     lines = tap[:-1]
-    v0 = lines.mean()
+    v0 = complex(geometry.displacement(lines)) if geometry.has_displacement else 0j
 
     def spread(scale: float) -> tuple[float, float]:
         volts = np.abs(v0 + scale * (lines - v0))
@@ -152,12 +177,13 @@ def _volts(l_n: ComplexArray) -> str:
 
 def _unbalance_figures(geometry: Geometry, courses: tuple[Course, ...]) -> str:
     quantities = [measured_quantities(geometry, c.segments[0].tap[None]) for c in courses]
+    short = {"line-to-neutral deviation": "line-to-neutral deviation", "line-to-line deviation": "line-to-line"}
 
     def most(name: str) -> float:
         return max(float(np.max(q["unbalance_percent"][name])) for q in quantities)
 
+    shown = ", ".join(f"{short.get(n, n)} {most(n):.1f} %" for n in definitions(geometry) if n != "spread")
+    if not geometry.has_displacement:
+        return shown
     v0 = max(float(np.max(q["v0_v"])) for q in quantities)
-    return (
-        f"V0 up to {v0:.1f} V; line-to-neutral deviation {most('line-to-neutral deviation'):.1f} %, "
-        f"line-to-line {most('line-to-line deviation'):.1f} %, V2/V1 {most('V2/V1'):.1f} %"
-    )
+    return f"V0 up to {v0:.1f} V; {shown}"

@@ -9,24 +9,34 @@ from relaycfg.model.cases import Case, Course, Segment
 from relaycfg.model.results import PlanePoint, Study
 from relaycfg.model.settings import Settings
 from relaycfg.model.site import Relay, Site
+from relaycfg.study.after_break import after_break
 from relaycfg.study.asymmetry import smallest_asymmetry, worked_break
 from relaycfg.study.breaks import break_study
 from relaycfg.study.case_verdicts import case_results
 from relaycfg.study.choice import harmful_states
 from relaycfg.study.closed import blocked, closed_groups
+from relaycfg.study.companions import companions
 from relaycfg.study.corridors import corridors
 from relaycfg.study.coverage import cleared, coverage
+from relaycfg.study.early_warning import loose_joints
+from relaycfg.study.earth_choice import earth_choice
+from relaycfg.study.elsewhere import elsewhere
 from relaycfg.study.evidence import Evidence, gather
 from relaycfg.study.feeds import feed_ranges
 from relaycfg.study.findings import findings
 from relaycfg.study.levels import NOMINAL
 from relaycfg.study.margins import security
+from relaycfg.study.own_life import own_life
+from relaycfg.study.place_asymmetry import place_asymmetries
 from relaycfg.study.place_summary import HARMS
+from relaycfg.study.reconnect import after_trip, reconnection
 from relaycfg.study.scenarios import AS_MODELLED, Scenarios
 from relaycfg.study.schedule import test_schedule
 from relaycfg.study.settle import Settled, settle
 from relaycfg.study.stage_results import stage_results
 from relaycfg.study.stages import ActiveStage, active_stages, operating_s
+from relaycfg.study.together import together
+from relaycfg.study.touch import touch_voltages
 
 PLANE_POINTS = 240
 DEAD_S = 1.0
@@ -60,8 +70,13 @@ def _judge(evidence: Evidence, settings: Settings, settled: Settled, existing: b
     left = tuple(w & ~cleared(active, s, evidence) for s, w in zip(evidence.scenarios, wanted, strict=True))
     never = blocked(evidence, wanted)
     closed = closed_groups(evidence, never)
-    places = break_study(evidence, active)
+    joints, warning = loose_joints(evidence, settings, active)
+    places = replace(break_study(evidence, active), joints=joints)
     feeds = feed_ranges(evidence)
+    seats = elsewhere(evidence, active)
+    unsteady = after_break(evidence, active)
+    after = after_trip(evidence)
+    life, again = own_life(evidence, active, after), reconnection(evidence, active, settings, after)
     return Study(
         evidence.site,
         evidence.relay.device,
@@ -77,7 +92,21 @@ def _judge(evidence: Evidence, settings: Settings, settled: Settled, existing: b
         sum(int(m.sum()) for m in left),
         sum(int((m & n).sum()) for m, n in zip(left, never, strict=True)),
         findings(
-            evidence, settings, settled, active, securities, cases, left, closed, places.summaries, feeds, existing
+            evidence,
+            settings,
+            settled,
+            active,
+            securities,
+            cases,
+            left,
+            closed,
+            places.summaries,
+            feeds,
+            existing,
+            life,
+            again,
+            seats,
+            unsteady,
         ),
         test_schedule(evidence, active),
         worked_break(evidence),
@@ -87,6 +116,16 @@ def _judge(evidence: Evidence, settings: Settings, settled: Settled, existing: b
         smallest_asymmetry(evidence, active),
         coverage(evidence, active),
         evidence.site.digest,
+        place_asymmetry=place_asymmetries(evidence, active),
+        elsewhere=seats,
+        together=together(evidence, active),
+        early_warning=warning,
+        touch=touch_voltages(evidence, active),
+        earth_choice=earth_choice(evidence, active),
+        own_life=life,
+        reconnection=again,
+        companions=companions(evidence, active),
+        after_break=unsteady,
     )
 
 
@@ -137,6 +176,6 @@ def _plane(evidence: Evidence, active: tuple[ActiveStage, ...]) -> tuple[PlanePo
 
 
 def _standing_v0(evidence: Evidence) -> float:
-    """Largest V0 of the standing cases [V]."""
+    """Largest V0 of the standing cases [V]; nan where the system has none."""
     taps = [s.tap for case in evidence.cases if case.standing for c in case.courses for s in c.segments]
-    return max(float(abs(t[:-1].mean())) for t in taps)
+    return max(float(abs(evidence.site.supply.geometry.displacement(t[:-1]))) for t in taps)

@@ -6,6 +6,8 @@ from relaycfg import units
 from relaycfg.model.break_results import BreakRow, BreakStudy, PlaceSummary
 from relaycfg.model.site import NONE, Site
 from relaycfg.text.figures import FLAGS, UNBALANCES, counted, place, share, together
+from relaycfg.text.highest import highest
+from relaycfg.text.joints import every_joint, hottest_joints
 from relaycfg.text.layout import heading, listing, shortened, shown, table, wrapped
 
 SCREEN = 60
@@ -38,6 +40,8 @@ def _lines(site: Site, study: BreakStudy, most: int, few: int, everything: bool)
         first = [row for row in study.rows if row.state == states[0]]
         lines += [*_state(site, first, most), *_legend(study.rows if everything else first[:most])]
     lines += _sampled(study.summaries, most, few)
+    lines += highest(study.highest, most, named=states == ["worst"])
+    lines += hottest_joints(study.joints, most)
     if study.notes:
         lines += heading("Notes")
         for note in study.notes[:few]:
@@ -46,6 +50,7 @@ def _lines(site: Site, study: BreakStudy, most: int, few: int, everything: bool)
     if everything:
         for row in study.rows:
             lines += _boards(row)
+        lines += every_joint(study.joints)
     elif len(states) > 1:
         lines += ["", f"{len(states)} load states computed, the first is shown; --all lists every state and board."]
     return lines
@@ -84,8 +89,12 @@ def _state(site: Site, rows: list[BreakRow], most: int) -> list[str]:
     heads += ["PE-earth"] if joint_ohm is None else ["A", "W"]
     cells = []
     for row in rows[:most]:
+        line = [place(row.at), row.conductor or units.ABSENT]
+        if not row.boards:
+            cells.append(line + [units.ABSENT] * (len(heads) - len(line)))
+            continue
         board = max(row.boards, key=lambda b: max(row.boards[b].l_n_v))
-        line = [place(row.at), row.conductor or units.ABSENT, board]
+        line += [board]
         line += [units.volts(v) for v in row.boards[board].l_n_v]
         if relay:
             line += [*(units.volts(v) for v in row.relays[relay].l_n_v), units.volts(row.relays[relay].v0_v)]
@@ -135,9 +144,9 @@ def _sampled(summaries: Sequence[PlaceSummary], most: int, few: int) -> list[str
         elsewhere = f"; not disconnected by the relay: {shown(s.not_disconnected, 4)}" if s.not_disconnected else ""
         lines += wrapped(f"{place(s.at)}: harm at {shown(s.boards_harmed, 4)}{elsewhere}{_worst(s)}", "  ")
     again = next((s.worst[0].index for s in harmed if s.worst), None)
-    return (
-        lines if again is None else [*lines, f'A sampled state is shown again by its number: --state "sample {again}"']
-    )
+    if again is None:
+        return lines
+    return [*lines, f'A sampled state is shown again by its number and the same seed: --state "sample {again}"']
 
 
 def _worst(summary: PlaceSummary) -> str:
@@ -170,7 +179,12 @@ def _boards(row: BreakRow) -> list[str]:
         unbalance = ", ".join(
             f"{words} {units.with_unit(at.unbalance_percent.get(key), '%')}" for key, words in UNBALANCES.items()
         )
-        lines += wrapped(f"At relay {name}: N-PE {units.with_unit(at.n_pe_v, 'V')}; unbalance: {unbalance}")
+        own = (
+            ""
+            if at.n_reference_v in (None, at.n_pe_v)
+            else f", N-own electrode {units.with_unit(at.n_reference_v, 'V')}"
+        )
+        lines += wrapped(f"At relay {name}: N-PE {units.with_unit(at.n_pe_v, 'V')}{own}; unbalance: {unbalance}")
     return lines
 
 

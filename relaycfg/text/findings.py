@@ -103,6 +103,7 @@ def break_classes(study: Study) -> list[str]:
 
 def blind_spots(study: Study) -> list[str]:
     """What the settings do not see: places, balanced loads, states nothing clears; what a finding says, only named."""
+    geometry = study.site.supply.geometry
     said = "\n".join(f"{f.sentence}\n{f.do}" for f in study.findings)
     unseen = [s for s in study.breaks.summaries if not s.seen]
     rows = unseen_rows([s for s in unseen if s.why_not not in said])
@@ -113,7 +114,7 @@ def blind_spots(study: Study) -> list[str]:
     seen = [f"{place(s.at)} {share(s.undetected)}" for s in study.breaks.summaries if s.seen]
     lines += wrapped(f"Load states in which a break seen from here does nothing yet: {'; '.join(seen)}") if seen else []
     ratios = [
-        f"{name} never" if k is None else f"{name} from {units.asymmetry(k)}:1:1"
+        f"{name} never" if k is None else f"{name} from {units.load_ratio(k, len(geometry.names))}"
         for name, k in study.smallest_asymmetry.items()
     ]
     lines += wrapped(f"Smallest load asymmetry seen behind a stiff source: {', '.join(ratios)}") if ratios else []
@@ -122,7 +123,16 @@ def blind_spots(study: Study) -> list[str]:
     lines += [line for sentence in new[:GROUPS] for line in wrapped(sentence, "* ")]
     more = len(new) - GROUPS
     lines += [f"and {counted(more, 'smaller group')} that nothing clears"] if more > 0 else []
-    return [*lines, *wrapped("A break with balanced load moves no voltage: no voltage relay can see it.")]
+    return [*lines, *wrapped(_equal_load(study))]
+
+
+def _equal_load(study: Study) -> str:
+    """What a break with equal loads does: nothing, but for two lines of a star."""
+    supply = study.site.supply
+    if supply.geometry.has_displacement:
+        return "A break with balanced load moves no voltage: no voltage relay can see it."
+    half = units.with_unit(supply.nominal_v * supply.geometry.line_to_line_ratio / 2, "V")
+    return f"A break with equal load puts {half} on either line, half the volts between them: only a 27 above sees it."
 
 
 def _uncleared(study: Study) -> str:

@@ -36,6 +36,9 @@ def study_dict(study: Study, program: str, explain: bool = False) -> dict[str, A
         "cases": plain(study.cases),
         "coverage": plain(study.coverage),
         "smallest_asymmetry": plain(study.smallest_asymmetry),
+        "place_asymmetry": plain(study.place_asymmetry),
+        "elsewhere": plain(study.elsewhere),
+        "together": plain(study.together),
         "uncleared": study.uncleared,
         "blocked": study.blocked,
         "closed": plain(study.closed),
@@ -46,6 +49,13 @@ def study_dict(study: Study, program: str, explain: bool = False) -> dict[str, A
         ],
         "worked": plain(study.worked),
         "tests": plain(study.tests),
+        "early_warning": plain(study.early_warning),
+        "touch": plain(study.touch),
+        "earth_choice": plain(study.earth_choice),
+        "own_life": plain(study.own_life),
+        "reconnection": plain(study.reconnection),
+        "companions": plain(study.companions),
+        "after_break": plain(study.after_break),
     }
     if explain:
         result |= {"corridors": plain(study.corridors), "plane": plain(study.plane)}
@@ -76,6 +86,8 @@ def _breaks(study: BreakStudy) -> dict[str, Any]:
         "notes": list(study.notes),
         "breaks": [_row(row) for row in study.rows],
         "summary": plain(study.summaries),
+        "joints": plain(study.joints),
+        "highest": plain(study.highest),
     }
 
 

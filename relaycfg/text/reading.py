@@ -41,19 +41,24 @@ def _figures(reading: Reading) -> list[str]:
     neutral = reading.neutral_v or 0j
     size, residual = units.volts(abs(neutral)), units.volts(3 * abs(neutral))
     band = f"{units.volts(reading.v0_low_v)} to {units.volts(reading.v0_high_v)} V {reading.band_from}"
-    lines = wrapped(f"V0 {size} V (3V0 {residual} V); {band}.")
+    names = [f"L{k + 1}" for k in range(len(reading.l_n_v))]
+    two = len(names) == 2
+    lines = wrapped(f"Neutral displaced by {size} V; {band}." if two else f"V0 {size} V (3V0 {residual} V); {band}.")
     lines += wrapped(f"Source {units.volts(reading.source_v)} V to its star point, from {reading.source_from}.")
     if reading.load_shares is not None:
         angle = units.degrees(math.degrees(cmath.phase(neutral)))
-        lines += wrapped(f"Neutral moved {size} V at {angle} degrees from the source volts of L1 (rotation L1-L2-L3).")
-        loads = f"{_ratio(reading.load_shares)} on L1 : L2 : L3"
+        if not two:
+            lines += wrapped(
+                f"Neutral moved {size} V at {angle} degrees from the source volts of L1 (rotation L1-L2-L3)."
+            )
+        loads = f"{_ratio(reading.load_shares)} on {' : '.join(names)}"
         lines += wrapped(f"Resistive loads of about {loads} would put it there.")
     for sentence in reading.arithmetic:
         lines += wrapped(f"Check: {sentence}.")
     return lines
 
 
-def _ratio(shares: tuple[float, float, float]) -> str:
+def _ratio(shares: tuple[float, ...]) -> str:
     least = min(shares)
     unit = least if least >= SMALL_SHARE * max(shares) else max(shares)
     return " : ".join(units.parts(s / unit) for s in shares)

@@ -39,6 +39,13 @@ measures_at = "MB"
 device = "relay.toml"
 {more}
 """
+TO_EARTH = "to-earth.toml"
+RODS = """
+[[board]]
+name = "Barn"
+fed_from = "MB"
+electrode = { rod_length_m = 3, rod_diameter_mm = 16, soil_ohm_m = 100, rods = 2, spacing_m = 6 }
+"""
 LOAD = '[[load]]\nboard = "MB"\nname = "{name}"\nbetween = "L1-N"\nkw = 1\n{more}\n'
 TRANSFORMER = 'kind = "transformer"\nrating_kva = 100'
 CASE = '[[case]]\nname = "{name}"\nexpect = "hold"\n[[case.segment]]\nduration_s = 1\nl_n_v = {volts}\n'
@@ -87,6 +94,7 @@ def choices() -> list[str]:
         *(bare(source=f'{TRANSFORMER}\nvector_group = "{group}"') for group in ("Dyn11", "Yzn5", "Yyn0")),
         *(bare(source=f'kind = "generator"\nrating_kva = 100\nclass = "{c}"') for c in ("G1", "G2", "G3")),
         bare(source='kind = "generator"\nrating_kva = 100'),
+        bare(volts=120, supply='system = "1ph-3w"', source=f"{TRANSFORMER}\nimpedance_percent = 2\nx_over_r = 1.5"),
         *(bare(cable=_cable(section, metal)) for section in (50, 51) for metal in ("Cu", "Al")),
         bare(cable="[board.cable]\nlength_m = 50\nline_mm2 = 25"),
         bare(more='[[board]]\nname = "Shed"\nfed_from = "MB"\n[board.cable]\nline_ohm = [0.1, 0]\n'),
@@ -95,6 +103,8 @@ def choices() -> list[str]:
         *(bare(more=f'[must_hold]\nsets = ["{name}"]') for name in ("public supply", "dips class 2", "dips class 3")),
         bare(more="".join(LOAD.format(name=n, more=f'kind = "{n}"') for n in names("load-kinds"))),
         bare(more=LOAD.format(name="own law", more="zip_p = [0.2, 0.3, 0.5]")),
+        bare(more=RODS),
+        bare().replace("relay.toml", TO_EARTH),
         bare(more='[[motor]]\nboard = "MB"\nname = "Fan"\nshaft_kw = 3\n'),
         bare(more=CASE.format(name="moved, at 1.14", volts=[196.6, 300.4, 300.4])),
         bare(more=CASE.format(name="even, nearly", volts=[115, 115, 117.27])),
@@ -108,6 +118,8 @@ def choices() -> list[str]:
 def read_bare(folder: Path, text: str) -> Site:
     """A site of ``bare`` as read from a folder, with a device that states nothing it need not."""
     (folder / "relay.toml").write_text(DEVICE, "utf-8")
+    to_earth = DEVICE.replace('measures = ["l-n"]', 'measures = ["l-n"]\ndisplacement_from = "n-to-earth"')
+    (folder / TO_EARTH).write_text(to_earth, "utf-8")
     (folder / "site.toml").write_text(text, "utf-8")
     return read_site(folder / "site.toml", need_relay=True)
 

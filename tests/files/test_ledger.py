@@ -80,6 +80,7 @@ def test_what_is_left_out_is_a_default_with_source_and_status(bench):
         "fault.final circuit of Workshop.clearing_s",
         "fault.final circuit of Workshop.circuit_ohm",
         "fault.cable to Workshop.clearing_s",
+        "board.touch_limit_v",
         "equipment.overvoltage",
         "equipment.sustained_high_v",
         "equipment.sustained_high_s",
@@ -171,7 +172,7 @@ def test_a_fifteen_line_site_runs_and_counts_what_it_leaves_out(bench):
     assert len(MINIMAL.splitlines()) == 15
     site = bench.read(MINIMAL, need_relay=True)
     defaults = [i for i in site.inputs if i.tag == "default"]
-    assert (len(site.inputs), len(defaults)) == (54, 38)
+    assert (len(site.inputs), len(defaults)) == (55, 39)
     assert all(i.note and i.status in STATUSES for i in defaults)
     assert site.warnings == ()
 

@@ -9,7 +9,8 @@ HEAD = "board,name,between,kw\n"
 LINES = "L1-N, L2-N, L3-N, L1-L2, L2-L3, L3-L1, L1-L2-L3, L1-L2-L3-N"
 COLUMNS = (
     "board, name, between, kw, current_a, ohm, pf, reactive, kind, zip_p, zip_q, band_pu, usage, demand, group, "
-    "third_harmonic_percent, minds_low_v, count, evidence"
+    "third_harmonic_percent, minds_low_v, cutout_pu, restart_s, damage_pu, "
+    "count, evidence"
 )
 CSV = {
     "empty": ("", "loads.csv: empty; give a line of column names, then a line a load"),

@@ -44,8 +44,8 @@ CASES = {
         V, V + '\nband_at = "Workshp"',
         'site.toml:3:1: supply.band_at is "Workshp", an unknown board; did you mean "Workshop"?',
     ),
-    "other system": (
-        V, V + '\nsystem = "1ph-3w"', 'site.toml:3:1: supply.system is "1ph-3w", not yet available; write "3ph-4w"'
+    "unknown system": (
+        V, V + '\nsystem = "2ph-4w"', 'site.toml:3:1: supply.system is "2ph-4w"; did you mean "3ph-4w"?'
     ),
     "unknown earthing": ('"TN-S"', '"TN-X"', 'site.toml:3:1: supply.earthing is "TN-X"; did you mean "TN-S"?'),
     "TN-C-S without a link": (
@@ -302,13 +302,36 @@ def test_members_of_a_group_share_one_usage(bench):
     ]
 
 
-def test_a_second_relay_and_its_missing_device_file_are_reported_at_once(bench):
-    text = bench.site + bench.relay + bench.relay.replace("R1", "R2")
-    assert bench.sentences(text) == [
+def test_every_relay_reports_its_missing_device_file_and_unknown_board(bench):
+    second = bench.relay.replace("R1", "R2").replace('"MB"', '"Attic"')
+    assert bench.sentences(bench.site + bench.relay + second) == [
         'site.toml:34:1: relay.R1.device is "relay.toml", not there; '
         "give the path of a device file, from the folder of the site",
-        "site.toml:36:1: relay.R2 is a second relay, not yet available; keep one [[relay]]",
+        'site.toml:38:1: relay.R2.measures_at is "Attic", an unknown board; give one of "MB", "Workshop"',
+        'site.toml:39:1: relay.R2.device is "relay.toml", not there; '
+        "give the path of a device file, from the folder of the site",
     ]
+
+
+def test_two_relays_have_names_of_their_own(bench):
+    bench.put("relay.toml", bench.device)
+    again = bench.site + bench.relay + bench.relay
+    assert bench.sentences(again) == [
+        'site.toml:37:1: relay.R1.name is "R1", used before; give every one a name of its own'
+    ]
+
+
+def test_the_first_relay_is_studied_until_another_is_asked_for_and_each_has_its_own_inputs(bench):
+    bench.put("relay.toml", bench.device)
+    one = bench.read(bench.site + bench.relay)
+    both = bench.read(bench.site + bench.relay + bench.relay.replace("R1", "R2").replace('"MB"', '"Workshop"'))
+    assert [r.name for r in both.relays] == ["R1", "R2"]
+    assert both.relay == one.relay == both.relays[0]
+    second = both.with_relay("R2")
+    assert (second.relay.name, second.relay.measures_at, second.relay.trips) == ("R2", "Workshop", "Workshop")
+    assert [r.name for r in second.every_relay] == ["R2", "R1"]
+    assert both.digest != one.digest
+    assert {i.field.split(".")[1] for i in both.inputs if i.field.startswith("relay.")} == {"R1", "R2"}
 
 
 def test_a_study_that_needs_a_relay_says_so(bench):

@@ -46,6 +46,26 @@ def test_settings_can_be_derived_for_a_starter_without_an_exception(tmp_path, vo
     assert derive(read_site(tmp_path / "site.toml", need_relay=True), 100, 1).exceptions == 0
 
 
+@pytest.mark.parametrize("earthing", ["TN-S", "TN-C-S", "TT"])
+@pytest.mark.parametrize(("system", "between_v"), [("1ph-3w", 240.0), ("2ph-3w", 207.85)])
+def test_a_starter_of_two_lines_reads_back_and_is_derived_without_an_exception(tmp_path, system, between_v, earthing):
+    """Source: own arithmetic: a lost neutral brings up to the volts between the lines, and a feed takes these."""
+    write_starter(tmp_path, 120.0, earthing, None, system=system)
+    site = read_site(tmp_path / "site.toml", need_relay=True)
+    assert site.warnings == ()
+    assert {load.lines for load in site.loads} == {(0,), (1,), (0, 1)}
+    assert site.relay.device.element(Function.OVERVOLTAGE).pickup.high >= between_v
+    assert site.relay.supply.low_v < 0.8 * between_v < 1.1 * between_v < site.relay.supply.high_v
+    assert (site.relay.device.element(Function.DISPLACEMENT) is not None) == (system == "1ph-3w")
+    assert derive(site, 100, 1).exceptions == 0
+
+
+@pytest.mark.parametrize(("system", "volts", "meant"), [("2ph-3w", 208.0, 120), ("2ph-3w", 400.0, 230)])
+def test_a_starter_of_two_lines_refuses_the_volts_between_them(tmp_path, system, volts, meant):
+    with pytest.raises(InputError, match=f"looks like a line-to-line voltage; .* line to neutral, {meant}"):
+        write_starter(tmp_path / "new", volts, "TN-S", None, system=system)
+
+
 def test_the_schema_comes_with_it_and_the_site_agrees_with_it(tmp_path):
     write_starter(tmp_path, 230.0, "TN-C-S", None)
     text = (tmp_path / "site.toml").read_text("utf-8")

@@ -15,6 +15,7 @@ from relaycfg.relay.quantities import measured_quantities
 from tests.reference.allocations import every, sample
 from tests.reference.case import Check, Line
 from tests.reference.equilibrium import equilibrium
+from tests.reference.rectifiers import rectifiers
 from tests.reference.setting import setting
 from tests.reference.state import State
 from tests.reference.unseen import unseen
@@ -111,6 +112,14 @@ def _limits(folder: Path, given: dict[str, Any]) -> Found:
     return {"low_v": supply.low_v, "high_v": supply.high_v}
 
 
+def _rods(folder: Path, given: dict[str, Any]) -> Found:
+    """Ohms of the board ``one``'s single rod and of the board ``group``'s nine, as the site is read; lambda is 1."""
+    one, group = given.pop("one"), given.pop("group")
+    site = setting(folder, given).site
+    rod_ohm, group_ohm = (site.board(name).electrode_ohm for name in (one, group))
+    return {"rod_ohm": rod_ohm, "group_ohm": group_ohm, "alpha_ratio": 9 * group_ohm / rod_ohm - 1}
+
+
 METHODS: dict[str, Callable[[Path, dict[str, Any]], Found]] = {
     "state": _state,
     "seek": _seek,
@@ -121,4 +130,6 @@ METHODS: dict[str, Callable[[Path, dict[str, Any]], Found]] = {
     "user case": _user_case,
     "motor start": _motor_start,
     "limits": _limits,
+    "rectifiers": rectifiers,
+    "rods": _rods,
 }

@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 
 from relaycfg.files import read_site
-from relaycfg.model.geometry import ComplexArray, Geometry
+from relaycfg.model.geometry import ComplexArray
 from relaycfg.model.site import SOURCE, Site
 from relaycfg.network import LoadStates, connected, healthy_emf
 
@@ -33,13 +33,11 @@ def setting(folder: Path, given: dict[str, Any]) -> Setting:
     """The setting that a line gives. Raises ValueError for a key it does not know.
 
     ``site`` (a file, site.toml), ``at`` (break place, source), ``joint_ohm`` (open), ``board`` (the last),
-    ``supply_pu`` (1), ``lines_deg`` (angles of the lines where they are not three), ``source_electrode_ohm``,
-    ``electrode_ohm.BOARD``, ``load.PATTERN`` (factor on the rating of every load of such a name, 1), and ``k_ratio``
-    with ``powers`` (load name to n: factor k ** n).
+    ``supply_pu`` (1), ``source_electrode_ohm``, ``electrode_ohm.BOARD``, ``load.PATTERN`` (factor on the rating of
+    every load of such a name, 1), and ``k_ratio`` with ``powers`` (load name to n: factor k ** n).
     """
     left = dict(given)
     site = read(folder / left.pop("site", "site.toml"))
-    site = _two_lines(site, left.pop("lines_deg", None))
     electrode = left.pop("source_electrode_ohm", site.source.electrode_ohm)
     site = replace(site, source=replace(site.source, electrode_ohm=electrode))
     factors = np.ones(len(site.loads))
@@ -67,11 +65,3 @@ def _loads(site: Site, pattern: str) -> list[int]:
     if not found:
         raise ValueError(f"no load is named {pattern}")
     return found
-
-
-def _two_lines(site: Site, lines_deg: list[float] | None) -> Site:
-    """The site with other lines: what files cannot say yet."""
-    if lines_deg is None:
-        return site
-    names = tuple(f"L{k + 1}" for k in range(len(lines_deg)))
-    return replace(site, supply=replace(site.supply, geometry=Geometry(names, tuple(lines_deg))))

@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from relaycfg.model.cases import Case
+from relaycfg.study import derive
 from relaycfg.study.evidence import gather
 from tests.study import yard
 
@@ -102,3 +103,10 @@ def test_no_standing_case_leaves_the_limits_of_the_supply(cases: tuple[Case, ...
         volts = np.abs(course.segments[0].tap[:-1])
         assert lowest - 1e-6 <= volts.min()
         assert volts.max() <= highest + 1e-6
+
+
+def test_the_supplys_own_displacement_stands_where_the_loads_bring_none(tmp_path):
+    """Source: own arithmetic: 2 percent of 230 V are 4.6 V; a perfectly balanced load leaves V0 at rounding noise."""
+    path = yard.write(tmp_path, loads=yard.BALANCED)
+    path.write_text(path.read_text().replace('band_at = "source"', 'band_at = "source"\ndisplacement_percent = 2'))
+    assert derive(yard.read(tmp_path), 5, 1).displacement_standing_v == pytest.approx(4.6)

@@ -9,7 +9,16 @@ from importlib import resources
 import jsonschema
 import pytest
 
-from relaycfg.model import break_results, results
+from relaycfg.model import (
+    after_break_results,
+    break_results,
+    companion_results,
+    joint_results,
+    own_life_results,
+    reconnect_results,
+    results,
+    touch_results,
+)
 from relaycfg.model.device import Function
 from relaycfg.model.settings import Settings, Stage
 from relaycfg.text import breaks_dict, study_dict
@@ -35,6 +44,39 @@ SHAPES = {
     "summary": break_results.PlaceSummary,
     "board": break_results.BoardVolts,
     "relay": break_results.RelayVolts,
+    "joint_point": joint_results.JointPoint,
+    "joint_sight": joint_results.JointSight,
+    "joint_state": joint_results.JointState,
+    "joint_sweep": joint_results.JointSweep,
+    "early_warning": joint_results.EarlyWarning,
+    "board_touch": touch_results.BoardTouch,
+    "relay_touch": touch_results.RelayTouch,
+    "place_touch": touch_results.PlaceTouch,
+    "earth_sight": touch_results.EarthSight,
+    "earth_choice": touch_results.EarthChoice,
+    "own_life": own_life_results.OwnLife,
+    "feed_life": own_life_results.FeedLife,
+    "held_loss": own_life_results.HeldLoss,
+    "sensing_neutral": own_life_results.SensingNeutral,
+    "poles": own_life_results.Poles,
+    "reconnection": reconnect_results.Reconnection,
+    "pumping": reconnect_results.Pumping,
+    "condition": reconnect_results.Condition,
+    "companions": companion_results.Companions,
+    "companion": companion_results.Companion,
+    "opening": companion_results.Opening,
+    "confusion": companion_results.Confusion,
+    "after_break": after_break_results.AfterBreak,
+    "place_after_break": after_break_results.PlaceAfterBreak,
+    "tripping": after_break_results.Tripping,
+    "cascade": after_break_results.Cascade,
+    "lost_load": after_break_results.Lost,
+    "drift": after_break_results.Drift,
+    "met": after_break_results.Met,
+    "band_edge": after_break_results.BandEdge,
+    "balanced": after_break_results.Balanced,
+    "course_picture": after_break_results.CoursePicture,
+    "happening": after_break_results.Happening,
 }
 
 
