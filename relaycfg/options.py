@@ -148,6 +148,19 @@ def load_state(_: click.Context, param: click.Parameter, value: str | None) -> s
     return f"sample {int(numbered[1])}"
 
 
+def known_place(site: "Site", given: str) -> str:
+    """A break place by its name as given on the command line."""
+    import unicodedata
+
+    name = unicodedata.normalize("NFC", given.strip())
+    known = ("none", *site.places)
+    if name not in known:
+        raise click.BadParameter(
+            f"{given!r} is no place where the neutral can break; give one of {', '.join(known)}", param_hint="'--at'"
+        )
+    return name
+
+
 def known_state(site: "Site", state: str | None, place: str | None) -> None:
     """Refuses a state that the site has not: unknown loads, or the worst one of no break."""
     if state == "worst" and place == "none":

@@ -14,7 +14,7 @@ ROOT = Path(__file__).parent.parent
 PACKAGE = ROOT / "relaycfg"
 FOLDERS = sorted(p.name for p in PACKAGE.iterdir() if p.is_dir() and any(p.glob("*.py")))
 MODULES = sorted(p.stem for p in PACKAGE.glob("*.py") if not p.stem.startswith("__"))
-COMMAND_LINE = {"cli", "options", "streams"}
+COMMAND_LINE = {"cli", "commands", "options", "streams"}
 EVERYTHING = "everything"
 ROW = re.compile(r"^\| ((?:`[\w./]+`(?:, )?)+) \|[^|]*\|([^|]*)\|$", re.MULTILINE)
 

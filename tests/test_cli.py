@@ -14,13 +14,13 @@ import jsonschema
 import pytest
 
 import relaycfg.files
-from relaycfg import __version__, cli, options
+from relaycfg import __version__, cli, commands, options
 from relaycfg.files import limits
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text("utf-8")
 COMMANDS = ["new", "breaks", "derive", "check", "sheet", "reading"]
-EXAMPLE_CODES = {"check": cli.EXCEPTIONS}
+EXAMPLE_CODES = {"check": commands.EXCEPTIONS}
 """Exit codes of the commands in the helps where they are not 0: the example's existing settings have exceptions."""
 FEW = ["--samples", "30"]
 UNNAMED = {"--output"}
@@ -100,7 +100,7 @@ def test_every_help_ends_with_a_command_that_runs(command, capsys, tmp_path, mon
     monkeypatch.chdir(tmp_path)
     few = FEW if example[1] not in ("new", "reading") else []
     code, out, err = run(capsys, *example[1:], *few)
-    assert code == EXAMPLE_CODES.get(example[1], cli.DONE), err
+    assert code == EXAMPLE_CODES.get(example[1], commands.DONE), err
     assert out
 
 
@@ -173,7 +173,7 @@ def test_the_sheet_has_a_plain_file_name(number, revision, name):
             pass
 
     Stated.document.number, Stated.document.revision = number, revision
-    assert cli.sheet_name(Stated) == name
+    assert commands.sheet_name(Stated) == name
 
 
 @pytest.mark.usefixtures("site")
@@ -412,7 +412,7 @@ def test_nominal_volts_are_those_of_a_site_file_and_the_help_says_so(capsys, tmp
 
 def test_the_help_names_every_exit_code(capsys):
     out = " ".join(run(capsys, "--help")[1].split())
-    for code in (cli.DONE, cli.EXCEPTIONS, cli.BAD_INPUT, cli.INTERRUPTED, cli.PIPE_CLOSED):
+    for code in (commands.DONE, commands.EXCEPTIONS, cli.BAD_INPUT, cli.INTERRUPTED, cli.PIPE_CLOSED):
         assert re.search(rf"[:,] {code} \w", out)
 
 
@@ -458,7 +458,7 @@ def test_what_is_written_before_the_path_is_refused_is_named(tmp_path):
 @needs_full
 def test_messages_that_find_no_room_stop_nothing(site):
     done = shell("breaks --samples 30 2> /dev/full", site)
-    assert (done.returncode, done.stdout[:12]) == (cli.DONE, "Starter site")
+    assert (done.returncode, done.stdout[:12]) == (commands.DONE, "Starter site")
     assert shell("breaks --at Attic 2> /dev/full", site).returncode == cli.BAD_INPUT
 
 
@@ -521,7 +521,7 @@ def test_the_first_message_says_how_much_there_is_to_do(capsys):
 
 @pytest.mark.parametrize(("samples", "long"), [(2000, False), (1_000_000, True)])
 def test_a_long_study_asks_for_patience(samples, long, capsys):
-    cli.announce(False, "deriving", samples, 3, cli.STUDY_S)
+    commands.announce(False, "deriving", samples, 3, commands.STUDY_S)
     said = capsys.readouterr().err
     assert said.startswith(f"relaycfg: deriving with {samples} drawn load states at 3 places")
     assert ("; this takes a while" in said) == long
