@@ -1,5 +1,6 @@
 """Choice of stages: greatest cover of what must be cleared, then fewest stages, then security margin, then speed."""
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from itertools import combinations
 
@@ -70,9 +71,9 @@ def choose(ladder: Ladder, own: Demand, need: Demand, stages: int) -> tuple[Rung
         for count in range(1, stages + 1)
         if _reaches(ladder, _score(ladder, own, need, best_cover(ladder, own, need, count)), goal)
     )
-    for units in _margins(ladder):
-        rungs = best_cover(ladder, own, need, fewest, units)
-        if _reaches(ladder, _score(ladder, own, need, rungs), goal):
+    for hard, units in _hardest_first(ladder, need):
+        rungs = best_cover(ladder, own, hard, fewest, units)
+        if _reaches(ladder, _score(ladder, own, hard, rungs), goal):
             break
     return raise_margins(ladder, own, need, rungs, goal)
 
@@ -85,7 +86,7 @@ def best_cover(ladder: Ladder, own: Demand, need: Demand, stages: int, units: fl
     first rung of its tightest deadline loses nothing: the distinct first rungs are the only candidates, and the
     search over their subsets is exact.
     """
-    pool = candidates(ladder, own.deadlines, units)
+    pool = candidates(ladder, np.union1d(own.deadlines, need.deadlines), units)
     best: tuple[Rung, ...] = ()
     score = (0, 0)
     for count in range(1, min(stages, len(pool)) + 1):
@@ -112,7 +113,8 @@ def raise_margins(
     The goal is all of the needed core and the kept share of the cover that the stages have now, or as given. Among the
     rungs that do, the fastest, then the lowest pickup.
     """
-    target = goal if goal is not None else _score(ladder, own, need, rungs)
+    now = _score(ladder, own, need, rungs)
+    target = goal if goal is not None else (now[0], max(now[1], _kept_of(ladder, own, need, now)))
     moved = list(rungs)
     for position in range(len(moved)):
         moved[position] = _with_margin(ladder, own, need, moved, position, target)
@@ -148,6 +150,12 @@ def _score(ladder: Ladder, own: Demand, need: Demand, rungs: tuple[Rung, ...]) -
     return _cover(need, pairs), _cover(own, pairs)
 
 
+def _kept_of(ladder: Ladder, own: Demand, need: Demand, now: tuple[int, int]) -> int:
+    """Greatest cover of ``own`` whose kept share the stages have: what was given up before is not given up twice."""
+    greatest = _score(ladder, own, need, best_cover(ladder, own, need, ladder.element.stages))[1]
+    return min(greatest, int(now[1] / ladder.judgement.cover_kept)) if ladder.judgement.cover_kept else now[1]
+
+
 def _cover(wanted: Demand, stages: list[tuple[int, float]]) -> int:
     """States covered by stages given as (rung, clearing time)."""
     total = 0
@@ -160,6 +168,17 @@ def _cover(wanted: Demand, stages: list[tuple[int, float]]) -> int:
 
 def _reaches(ladder: Ladder, score: tuple[int, int], goal: tuple[int, int]) -> bool:
     return score[0] >= goal[0] and score[1] >= ladder.judgement.cover_kept * goal[1]
+
+
+def _hardest_first(ladder: Ladder, need: Demand) -> Iterator[tuple[Demand, float]]:
+    """What is needed with time kept towards its deadlines, and the security margin to try it with.
+
+    The time kept goes first, down to none, and no less margin is tried than time is kept.
+    """
+    for share in (1.0, 0.5, 0.0):
+        kept_units = share * ladder.judgement.deadline_kept_units
+        hard = replace(need, deadlines=need.deadlines / UNIT_TIME**kept_units)
+        yield from ((hard, units) for units in _margins(ladder) if units >= kept_units)
 
 
 def _margins(ladder: Ladder) -> list[float]:
@@ -176,19 +195,16 @@ def _with_margin(
     A security margin bought with all of the time left would leave a core state one step from being missed.
     """
     others = [(r.pickup, float(ladder.clearing[r.delay])) for k, r in enumerate(rungs) if k != position]
-    for share in (1.0, 0.5, 0.0):
-        kept_units = share * ladder.judgement.deadline_kept_units
-        hard = replace(need, deadlines=need.deadlines / UNIT_TIME**kept_units)
-        for units in _margins(ladder):
-            if units < max(kept_units, rungs[position].margin_units):
-                break
-            fastest = ladder.fastest(units)
-            clearing = ladder.clearing[fastest]
-            kept = (_cover_of_each(hard, others, clearing) >= goal[0]) & (fastest < len(ladder.delays))
-            kept &= _cover_of_each(own, others, clearing) >= ladder.judgement.cover_kept * goal[1]
-            if kept.any():
-                quickest = int(fastest[kept].min())
-                return Rung(_first(kept & (fastest == quickest)), quickest, units)
+    for hard, units in _hardest_first(ladder, need):
+        if units < rungs[position].margin_units:
+            continue
+        fastest = ladder.fastest(units)
+        clearing = ladder.clearing[fastest]
+        kept = (_cover_of_each(hard, others, clearing) >= goal[0]) & (fastest < len(ladder.delays))
+        kept &= _cover_of_each(own, others, clearing) >= ladder.judgement.cover_kept * goal[1]
+        if kept.any():
+            quickest = int(fastest[kept].min())
+            return Rung(_first(kept & (fastest == quickest)), quickest, units)
     return rungs[position]
 
 

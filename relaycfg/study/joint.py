@@ -1,6 +1,8 @@
 """The greatest core that all elements together can clear: exact search over the few rungs that can matter."""
 
-from itertools import combinations, product
+from collections.abc import Iterable
+from functools import reduce
+from itertools import combinations
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,28 +25,23 @@ def joint_core(
     """Secure stages of all elements that clear most of the ``core`` states, fewest stages among equals.
 
     Per element only the first rung that is fast enough for each deadline can matter (see ``choice.best_cover``).
-    Each core state becomes the set of candidate rungs that clear it, as bits; equal sets are counted once.
+    States that the same candidate rungs clear are counted as one kind.
     """
+    if not ladders:
+        return {}
     pool = {f: candidates(ladder, _deadlines(scenarios, core)) for f, ladder in ladders.items()}
-    signatures, counts = _signatures(ladders, pool, scenarios, core)
-    first_bit, at = {}, 0
-    for function in ladders:
-        first_bit[function] = at
-        at += len(pool[function])
+    cleared, counts = _kinds(ladders, pool, scenarios, core)
     sets: dict[Function, Sets] = {}
-    masks: dict[Function, NDArray[np.uint64]] = {}
+    hits: list[BoolArray] = []
     for function, ladder in ladders.items():
-        numbered = list(enumerate(pool[function]))
-        chosen = [
-            subset
-            for count in range(min(ladder.element.stages, len(numbered)) + 1)
-            for subset in combinations(numbered, count)
-        ]
-        sets[function] = [tuple(rung for _, rung in subset) for subset in chosen]
-        bits = [sum(1 << (first_bit[function] + k) for k, _ in subset) for subset in chosen]
-        masks[function] = np.array(bits, np.uint64)
-    best = _search(masks, signatures, counts) if _size(masks) <= MOST_SETS else _in_turn(masks, signatures, counts)
-    return {f: sets[f][best[k]] for k, f in enumerate(ladders)}
+        most = min(ladder.element.stages, len(pool[function]))
+        chosen = [s for count in range(most + 1) for s in combinations(range(len(pool[function])), count)]
+        sets[function] = [tuple(pool[function][k] for k in subset) for subset in chosen]
+        hits.append(np.array([cleared[function][list(subset)].any(axis=0) for subset in chosen]))
+    size = np.prod([len(hit) for hit in hits], dtype=float)
+    stages = [np.array([len(subset) for subset in sets[f]]) for f in ladders]
+    best = _search(hits, counts, stages) if size <= MOST_SETS else _in_turn(hits, counts)
+    return {f: sets[f][k] for f, k in zip(ladders, best, strict=True)}
 
 
 def _deadlines(scenarios: tuple[Scenarios, ...], core: tuple[BoolArray, ...]) -> NDArray[np.floating]:
@@ -52,61 +49,49 @@ def _deadlines(scenarios: tuple[Scenarios, ...], core: tuple[BoolArray, ...]) ->
     return np.unique(np.concatenate(seconds)) if seconds else np.array([])
 
 
-def _signatures(
+def _kinds(
     ladders: dict[Function, Ladder],
     pool: dict[Function, list[Rung]],
     scenarios: tuple[Scenarios, ...],
     core: tuple[BoolArray, ...],
-) -> tuple[NDArray[np.uint64], NDArray[np.intp]]:
-    """Distinct sets of candidate rungs that clear a core state, and how many states have each."""
-    found = []
-    for scenario, mask in zip(scenarios, core, strict=True):
-        bits = np.zeros(int(mask.sum()), np.uint64)
-        at = 0
-        for function, ladder in ladders.items():
-            for rung in pool[function]:
-                bits |= covered_by(ladder, (rung,), scenario)[mask].astype(np.uint64) << np.uint64(at)
-                at += 1
-        found.append(bits)
-    return np.unique(np.concatenate(found), return_counts=True) if found else (np.zeros(0, np.uint64), np.zeros(0, int))
+) -> tuple[dict[Function, BoolArray], NDArray[np.intp]]:
+    """Which kinds of core state each candidate clears [candidates, kinds], and how many states are of each kind."""
+    rows = [
+        np.concatenate([covered_by(ladders[f], (rung,), s)[m] for s, m in zip(scenarios, core, strict=True)])
+        for f in ladders
+        for rung in pool[f]
+    ]
+    states = sum(int(mask.sum()) for mask in core)
+    packed = np.packbits(np.array(rows, bool).reshape(len(rows), states), axis=0)
+    kinds, counts = np.unique(packed, axis=1, return_counts=True)
+    table = np.unpackbits(kinds, axis=0, count=len(rows)).astype(bool)
+    ends = np.cumsum([len(pool[f]) for f in ladders])[:-1]
+    return dict(zip(ladders, np.split(table, ends), strict=True)), counts
 
 
-def _size(masks: dict[Function, NDArray[np.uint64]]) -> int:
-    return int(np.prod([len(m) for m in masks.values()], dtype=float))
+def _search(hits: list[BoolArray], counts: NDArray[np.intp], stages: list[NDArray[np.intp]]) -> tuple[int, ...]:
+    """Every joint set: most states cleared, then fewest stages."""
+    grid = np.ix_(*(np.arange(len(hit)) for hit in hits))
+    shape = np.broadcast_shapes(*(axis.shape for axis in grid))
+    total, used = np.zeros(shape, np.intp), np.zeros(shape, np.intp)
+    for kind, count in enumerate(counts):
+        total += np.where(_any(hit[axis, kind] for hit, axis in zip(hits, grid, strict=True)), count, 0)
+    for number, axis in zip(stages, grid, strict=True):
+        used += number[axis]
+    best = int(np.lexsort((used.ravel(), -total.ravel()))[0])
+    return tuple(int(k) for k in np.unravel_index(best, shape))
 
 
-def _cleared(mask: NDArray[np.uint64], signatures: NDArray[np.uint64], counts: NDArray[np.intp]) -> NDArray[np.intp]:
-    """States cleared [sets] by each joint set of rungs."""
-    total = np.zeros(len(mask), np.intp)
-    for signature, count in zip(signatures, counts, strict=True):
-        total += np.where((mask & signature) != 0, count, 0)
-    return total
-
-
-def _search(
-    masks: dict[Function, NDArray[np.uint64]], signatures: NDArray[np.uint64], counts: NDArray[np.intp]
-) -> tuple[int, ...]:
-    index = list(product(*(range(len(m)) for m in masks.values())))
-    joint = np.zeros(len(index), np.uint64)
-    columns = np.array(index, np.intp).reshape(len(index), len(masks))
-    for column, own in zip(columns.T, masks.values(), strict=True):
-        joint |= own[column]
-    total = _cleared(joint, signatures, counts)
-    stages = np.bitwise_count(joint)
-    best = int(np.lexsort((stages, -total))[0])
-    return tuple(int(k) for k in columns[best])
-
-
-def _in_turn(
-    masks: dict[Function, NDArray[np.uint64]], signatures: NDArray[np.uint64], counts: NDArray[np.intp]
-) -> tuple[int, ...]:
-    chosen = [0] * len(masks)
-    own = list(masks.values())
-    for _ in range(len(masks) + 1):
-        for k, mine in enumerate(own):
-            others = np.uint64(0)
-            for j, theirs in enumerate(own):
-                if j != k:
-                    others |= theirs[chosen[j]]
-            chosen[k] = int(np.argmax(_cleared(mine | others, signatures, counts)))
+def _in_turn(hits: list[BoolArray], counts: NDArray[np.intp]) -> tuple[int, ...]:
+    """One element after the other, given the others' sets."""
+    chosen = [0] * len(hits)
+    for _ in range(len(hits) + 1):
+        for k, mine in enumerate(hits):
+            others = (hit[chosen[j]] for j, hit in enumerate(hits) if j != k)
+            chosen[k] = int(np.argmax(_any((mine, *others)) @ counts))
     return tuple(chosen)
+
+
+def _any(flags: Iterable[BoolArray]) -> BoolArray:
+    found: BoolArray = reduce(np.logical_or, flags)
+    return found

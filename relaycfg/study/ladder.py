@@ -11,6 +11,7 @@ from relaycfg.model.geometry import FloatArray, three_phase
 from relaycfg.model.judgement import Judgement
 from relaycfg.model.site import Relay
 from relaycfg.relay import pickups_least_sensitive, pickups_most_sensitive, shortest_delay, total_clearing
+from relaycfg.relay.machine import GRAIN_S
 from relaycfg.study.ride_through import RideThrough, Runs, ride_through
 
 UNIT_TIME = 1.1
@@ -106,4 +107,4 @@ class Ladder:
         A stage is secure iff its delay at its shortest is longer than R.
         """
         seconds = self.ride_through(margin_units).seconds
-        return np.searchsorted(self.shortest / UNIT_TIME**margin_units, seconds, side="right")
+        return np.searchsorted(self.shortest / UNIT_TIME**margin_units, seconds + GRAIN_S, side="right")

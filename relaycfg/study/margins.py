@@ -7,6 +7,7 @@ import numpy as np
 from relaycfg.model.device import Function
 from relaycfg.model.geometry import BoolArray, FloatArray
 from relaycfg.relay import pickup_at_least_sensitive, pickup_at_most_sensitive
+from relaycfg.relay.machine import GRAIN_S
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.ladder import UNIT_TIME
 from relaycfg.study.ride_through import STANDING, Runs, behind_name, ride_through, run_lengths
@@ -52,12 +53,12 @@ def security(active: ActiveStage) -> Security:
         volts_case = f"{runs.standing_name}: it would not drop out again"
     now = ride_through(runs, np.array([band.pickup]), np.array([band.dropout]), active.hold_s)
     reach = float(now.seconds[0])
-    found = bool(np.isfinite(least))
+    found, holds = bool(np.isfinite(least)), band.delay_s > reach + GRAIN_S
     return Security(
-        band.delay_s > reach,
+        holds,
         as_set(active, least) if found else None,
         _finite(band.delay_s - reach) if reach > 0 else None,
-        _units(active) if band.delay_s > reach else None,
+        _units(active) if holds else None,
         band.pickup - least if found else None,
         volts_case if found else "no case limits it",
         behind_name(runs, int(now.behind[0])),
@@ -99,7 +100,7 @@ def _failing_shift(active: ActiveStage, runs: Runs) -> FloatArray:
     levels = levels[np.isfinite(levels)]
     shifts = np.unique(np.concatenate([band.pickup - levels, band.pickup - levels / ratio]))
     pickup = band.pickup - shifts - HAIR_V
-    fails = run_lengths(runs, pickup, pickup * ratio, active.hold_s) >= band.delay_s
+    fails = run_lengths(runs, pickup, pickup * ratio, active.hold_s) + GRAIN_S >= band.delay_s
     return np.where(fails.any(axis=1), shifts[np.argmax(fails, axis=1)], np.inf)
 
 
@@ -107,7 +108,7 @@ def _units(active: ActiveStage) -> float | None:
     units = np.linspace(0, MOST_UNITS, UNIT_STEPS)
     pickup = active.sensitive.pickup - units * active.ladder.unit
     reach = ride_through(active.ladder.runs, pickup, pickup * active.stage.dropout_ratio, active.hold_s).seconds
-    fails = active.sensitive.delay_s / UNIT_TIME**units <= reach
+    fails = active.sensitive.delay_s / UNIT_TIME**units <= reach + GRAIN_S
     if not fails.any():
         return None
     first = int(np.argmax(fails))
