@@ -68,6 +68,20 @@ def test_the_sheet_prints_the_figures_of_the_json_and_repeats_its_bytes(
         assert f"{case['highest_v0_v']:.1f}" in text
 
 
+def test_a_switched_pen_is_an_exception_on_page_one(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    for part in EXAMPLE.iterdir():
+        if part.is_file():
+            (tmp_path / part.name).write_bytes(part.read_bytes())
+    site = tmp_path / "site.toml"
+    as_repaired = site.read_text()
+    site.write_text(as_repaired.replace('poles = "lines" ', 'poles = "lines and neutral" '))
+    assert site.read_text() != as_repaired
+    run(capsys, "sheet", str(site), "-o", str(tmp_path / "sheet.pdf"), *SAMPLES)
+    with pdfplumber.open(tmp_path / "sheet.pdf") as pdf:
+        first = " ".join((pdf.pages[0].extract_text() or "").split())
+    assert "a PEN is never switched" in first
+
+
 def test_the_flaws_of_the_existing_settings_are_found(capsys: pytest.CaptureFixture[str]) -> None:
     code, out = run(
         capsys,

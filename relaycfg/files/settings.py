@@ -94,12 +94,12 @@ def _entries(
 
 def _stage(entry: Entry[StageForm], function: Function, relay: Relay, file: TomlFile, problems: list[Problem]) -> Stage:
     form, element = entry.form, relay.device.element(function)
-    quantity = element.quantity if element is not None else USUAL_QUANTITY[function]
     named: str | None = None
     if isinstance(form, DisplacementStageForm):
         named = form.quantity
     elif isinstance(form, UnbalanceStageForm):
         named = form.definition
+    quantity = element.quantity if element is not None else named or USUAL_QUANTITY[function]
     if named is not None and named != quantity:
         key = "quantity" if function is Function.DISPLACEMENT else "definition"
         problems.append(file.problem((*entry.loc, key), f'"{named}"', f'the device counts "{quantity}": write it so'))

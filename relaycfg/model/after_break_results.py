@@ -16,6 +16,8 @@ class Tripping:
     median_s: float | None
     late_s: float | None
     """95 percent of those that trip are open by then."""
+    possible: bool = True
+    """False where the course ends before it could have cleared: its share then says nothing."""
 
 
 @dataclass(frozen=True)

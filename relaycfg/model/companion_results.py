@@ -29,9 +29,13 @@ class Companion:
     l_l_v: tuple[float, ...]
     v0_v: float
     operates: tuple[Opening, ...]
-    """Stages that operate while it lasts, the fastest first."""
+    """Stages that operate while it lasts, the fastest first; none while a feed keeps the relay from it."""
+    unfed: str
+    """Supply or coil out of its range in this state, with its volts; empty where both are fed."""
+    unfed_share: Share
+    """Load states of the pattern in which supply or coil is out of its range."""
     displaced: bool
-    """Whether an active 59N operates."""
+    """Whether an active 59N operates, here or, where the relay is unfed, in the median state in which it is fed."""
     read_alone: str
     """First cause that readings line to neutral name."""
     read_with_lines: str
@@ -64,6 +68,8 @@ class Companions:
     def named_neutral(self, kind: Truth, with_lines: bool) -> tuple[Share, str]:
         """The share named a lost neutral first, and of which truth: of lost neutrals the least, else the largest."""
         rows = [c for c in self.confusion if c.kind == kind and c.with_lines is with_lines]
+        if not rows:
+            return Share(0, 0, 0.0, 1.0), ""
         sign = -1 if kind == "lost neutral" else 1
         row = max(rows, key=lambda c: sign * c.named_neutral.percent)
         return row.named_neutral, row.truth

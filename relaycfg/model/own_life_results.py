@@ -74,8 +74,10 @@ class Poles:
     early_harmful: Share | None
     """Load states at nominal supply in which that harms within the spread itself."""
     after_pe_v: float | None
-    """Largest volts of metalwork behind the switch to remote earth after it has opened, neutral still lost upstream;
-    None where nothing is tied to earth."""
+    """Largest volts of metalwork behind the switch to remote earth after it has opened, neutral still lost upstream,
+    over the PENs that break where there are any; None where nothing is tied to earth, or nothing else is modelled."""
+    not_modelled_at: tuple[str, ...]
+    """Places of a broken PEN whose other users are not in the model: nothing there says what the metalwork carries."""
 
 
 @dataclass(frozen=True)

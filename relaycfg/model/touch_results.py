@@ -24,15 +24,15 @@ class RelayTouch:
 
     ``within``, ``late`` and ``never`` are shares of the states above: the switch is open within the table's time for
     that voltage, later, not at all. ``left`` is what stays with the switch open: boards it does not disconnect keep
-    the metalwork up.
+    the metalwork up. It is None, not nothing, where the model has no other user of a PEN that is broken.
     """
 
     within: Share
     late: Share
     never: Share
-    left_v: float
+    left_v: float | None
     left_board: str
-    left: Share
+    left: Share | None
 
 
 @dataclass(frozen=True)

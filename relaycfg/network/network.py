@@ -11,14 +11,14 @@ from relaycfg.model.site import NONE, EarthReference, Site
 from relaycfg.network.branches import build_branches
 from relaycfg.network.loadlaw import Law, outside
 from relaycfg.network.reduction import Reduction, reduce_network
-from relaycfg.network.solver import Solution, chase, joined, pick, solve_block
-from relaycfg.network.states import STARTING, LoadStates
+from relaycfg.network.solver import Solution, chase, joined, middle, pick, solve_block
+from relaycfg.network.states import STARTING, LoadStates, connected, join, least
 from relaycfg.network.sweeps import Iterate, Problem
 
 BLOCK = 64_000
 """Branches times states solved at once: what stays in a core's own cache."""
 LEAST_BLOCK = 1024
-"""States solved at once however many the branches: each block moves its middle into the network once."""
+"""States solved at once however many the branches."""
 SAME_ROOT_V = 0.1
 FAR_START = 0.8
 ACTS = 1e-9
@@ -63,6 +63,7 @@ class Network:
     def __init__(self, site: Site) -> None:
         self.boards = tuple(b.name for b in site.boards)
         self._lines = len(site.supply.geometry.names)
+        self._extremes = join(least(site), connected(site))
         self._branches = build_branches(site)
         self._reduction = reduce_network(site, self._branches)
 
@@ -84,8 +85,9 @@ class Network:
         the resistance of the joint (0: sound), an array [states] of each state's own (above 0, inf: open).
         ``all_impedance`` takes every load as the constant impedance of its
         rating. ``look_for_roots`` starts again from a neutral shifted to 0.8 of each line's EMF; a state that comes
-        to rest more than 0.1 V elsewhere has several solutions; what is returned stays connected to the sound
-        neutral. Raises KeyError for an unknown place, ValueError for a negative joint.
+        to rest more than 0.1 V elsewhere has several solutions; what is returned is where the sweeps from the intact
+        network end, whatever states are solved beside it: nearly always the one connected to the sound neutral.
+        Raises KeyError for an unknown place, ValueError for a negative joint.
 
         Large samples are best handed over a few thousand states at a time: the result keeps every board's phasors.
         """
@@ -113,12 +115,13 @@ class Network:
         """All states block by block, then those that still move, pooled over the blocks."""
         count = states.count
         block = max(LEAST_BLOCK, BLOCK // max(len(run.order), 1))
+        about_s = middle(self._law(self._extremes, np.arange(2), run.order, all_impedance))
         left: list[NDArray[np.intp]] = []
         moving: list[Iterate] = []
         for first in range(0, count, block):
             part = np.arange(first, min(first + block, count))
             law = self._law(states, part, run.order, all_impedance)
-            found, at = solve_block(run.problem, law, start, run.each(part))
+            found, at = solve_block(run.problem, law, about_s, start, run.each(part))
             run.keep(part, law, found)
             rest = np.flatnonzero(~found.converged)
             if len(rest):
@@ -130,7 +133,8 @@ class Network:
         for first in range(0, len(pool), block):
             among = np.arange(first, min(first + block, len(pool)))
             law = self._law(states, pool[among], run.order, all_impedance)
-            run.keep(pool[among], law, chase(run.problem, law, pick(iterate, among), start, run.each(pool[among])))
+            found = chase(run.problem, law, about_s, pick(iterate, among), start, run.each(pool[among]))
+            run.keep(pool[among], law, found)
 
     def _problem(self, place: str, emf: ComplexArray, joint_ohm: float | None) -> tuple[NDArray[np.intp], Problem]:
         """The solver's problem, and the order of the branches in it: those the joint acts on first."""

@@ -50,15 +50,17 @@ def leak(problem: Problem, law: Law, each_s: FloatArray | None = None) -> FloatA
 
 
 def solve_block(
-    problem: Problem, law: Law, start_w: complex, each_s: FloatArray | None = None
+    problem: Problem, law: Law, about_s: ComplexArray, start_w: complex, each_s: FloatArray | None = None
 ) -> tuple[Solution, Iterate]:
     """The usual schedule for the states of one block: most have converged after it, the rest goes to ``chase``.
 
-    FAST_SWEEPS in single precision, then EXACT_SWEEPS in double with the last slopes. A state has converged when its
+    ``about_s`` [branches] is what of the loads' admittances is moved into the network; it must not depend on the block,
+    or a state with several solutions would come to rest by the company it is solved in. FAST_SWEEPS in single
+    precision, then EXACT_SWEEPS in double with the last slopes. A state has converged when its
     last move times its rate is below TOLERANCE_V.
     """
     leak_s = leak(problem, law, each_s)
-    problem = problem.about(middle(law))
+    problem = problem.about(about_s)
     at = _begin(problem, law.z_re.shape[1], start_w, FIRST_CAP_V, np.float32)
     single = Sweeper(problem, law, leak_s, np.float32)
     for _ in range(FAST_SWEEPS):
@@ -71,13 +73,20 @@ def solve_block(
     return _finish(problem, law, leak_s, at, _error(before, size) < TOLERANCE_V), at
 
 
-def chase(problem: Problem, law: Law, at: Iterate, start_w: complex, each_s: FloatArray | None = None) -> Solution:
+def chase(
+    problem: Problem,
+    law: Law,
+    about_s: ComplexArray,
+    at: Iterate,
+    start_w: complex,
+    each_s: FloatArray | None = None,
+) -> Solution:
     """States that ``solve_block`` left moving: fresh slopes from where they are, then small steps from the start.
 
     Without a stable state near the intact one a state may not converge.
     """
     leak_s = leak(problem, law, each_s)
-    problem = problem.about(middle(law))
+    problem = problem.about(about_s)
     converged = _until_still(problem, law, leak_s, at, MORE_SWEEPS)
     rest = np.flatnonzero(~converged)
     if len(rest):
@@ -88,7 +97,7 @@ def chase(problem: Problem, law: Law, at: Iterate, start_w: complex, each_s: Flo
 
 
 def middle(law: Law) -> ComplexArray:
-    """The middle [branches] of the block's load admittances at nominal voltage (geometric mean of the band)."""
+    """The middle [branches] of the load admittances of some states at nominal voltage (geometric mean of the band)."""
     nominal = np.sqrt(law.low_v * law.high_v)
     now = flow(law, nominal + 0 * law.z_re, 0 * law.z_re)
     re, im = ((g.max(axis=1) + g.min(axis=1)) / 2 for g in (now.g_re, now.g_im))

@@ -31,7 +31,7 @@ def after_break(ink: Ink) -> Flow:
         ),
         ink.say("after_break.reading", "small"),
         *([] if result.picture is None else _chart(ink, result.picture)),
-        *_stages(ink, places),
+        *_stages(ink, places, result.course_s),
         *_cascades(ink, places),
         *_drift(ink, places),
         *_edge(ink, places),
@@ -54,9 +54,16 @@ def _row(p: PlaceAfterBreak) -> list[Any]:
     ]
 
 
-def _stages(ink: Ink, places: tuple[PlaceAfterBreak, ...]) -> Flow:
+def _stages(ink: Ink, places: tuple[PlaceAfterBreak, ...], course_s: float) -> Flow:
+    late = ink.wording.text("after_break.cannot", course_s=course_s)
     rows = [
-        [p.at, t.what, figures.share(t.share), figures.by_unit(t.median_s, "s"), figures.by_unit(t.late_s, "s")]
+        [
+            p.at,
+            t.what,
+            figures.share(t.share) if t.possible else late,
+            figures.by_unit(t.median_s, "s"),
+            figures.by_unit(t.late_s, "s"),
+        ]
         for p in places
         for t in p.stages
     ]
@@ -64,13 +71,19 @@ def _stages(ink: Ink, places: tuple[PlaceAfterBreak, ...]) -> Flow:
 
 
 def _cascades(ink: Ink, places: tuple[PlaceAfterBreak, ...]) -> Flow:
+    """What fails in each state; states in which nothing does are left out, and said once where that is all of them."""
     rows = []
     for p in places:
         for c in p.cascades:
+            if not c.lost and c.resolved:
+                continue
             rounds = "; ".join(f"{lost.load} at {figures.volts(lost.highest_v)} V" for lost in c.lost)
             ends = ink.wording.text("after_break.over" if c.resolved else "after_break.unresolved")
             none = ink.wording.text("after_break.none")
             rows.append([p.at, c.state, str(len(c.lost)), rounds or none, f"{figures.volts(c.highest_v)} V, {ends}"])
+    if not rows and any(p.cascades for p in places):
+        title = ink.wording.text("after_break.cascade_title")
+        return [*ink.heading("after_break_cascade", 1, title), ink.say("after_break.no_cascade", "small")]
     return _part(ink, "cascade", rows, (16, 14, 8, 44, 18), "llrll")
 
 
@@ -98,7 +111,7 @@ def _edge(ink: Ink, places: tuple[PlaceAfterBreak, ...]) -> Flow:
         if e is None:
             continue
         for k, edge in enumerate((None, *e.edges_pu)):
-            name = ink.wording.text("after_break.stated") if edge is None else f"{figures.plain(edge)} pu"
+            name = ink.wording.text("after_break.stated") if edge is None else f"{figures.plain(edge)} x nominal"
             moved = figures.ABSENT if k == 0 else " / ".join(figures.volts(v) for v in e.moved_v[k - 1])
             shares = [figures.share(three[k]) for three in (e.harmful, e.core, e.seen)]
             rows.append([p.at, name, moved, *shares, str(e.unresolved[k])])

@@ -91,7 +91,7 @@ def _patterns(ink: Ink, found: Companions) -> Flow:
         ink.say("aftermath.patterns_lead", judgement=ink.study.site.judgement),
         *ink.table(
             words.lines("aftermath.patterns_heads"),
-            [_pattern(p) for p in found.patterns],
+            [_pattern(ink, p) for p in found.patterns],
             (18, 14, 14, 7, 15, 17, 23),
             "lrrrlll",
         ),
@@ -100,15 +100,19 @@ def _patterns(ink: Ink, found: Companions) -> Flow:
         *ink.table(
             [words.text("aftermath.confusion_head"), *KINDS, *words.lines("aftermath.confusion_ends")],
             [_confused(truth, [c for c in found.confusion if c.truth == truth]) for truth in truths],
-            (26, 12, 12, 12, 12, 13, 12, 7, 10),
+            (24, 12, 12, 12, 12, 13, 12, 7, 12),
             "lrrrrrrrr",
         ),
     ]
 
 
-def _pattern(p: Companion) -> list[Any]:
+def _pattern(ink: Ink, p: Companion) -> list[Any]:
     name = p.name if p.kind == "other" else Markup("<b>{}</b>").format(p.name)
-    operates = ", ".join(f"{o.stage} {figures.seconds(o.seconds)} s" for o in p.operates) or figures.ABSENT
+    stages = [f"{o.stage} {figures.seconds(o.seconds)} s" for o in p.operates]
+    some = ink.wording.text("aftermath.unfed", share=figures.percent(p.unfed_share.percent))
+    # The state shown may be fed where others of the same pattern are not.
+    feeds = [p.unfed] if p.unfed else [some] if p.unfed_share.count else []
+    operates = ", ".join([*stages, *feeds]) or figures.ABSENT
     volts = figures.by_unit(p.v0_v, "V")
     return [name, _volts(p.l_n_v), _volts(p.l_l_v), volts, operates, p.read_with_lines, p.message]
 

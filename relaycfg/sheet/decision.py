@@ -7,6 +7,7 @@ from markupsafe import Markup
 from reportlab.platypus import KeepInFrame
 
 from relaycfg.model.results import Finding, Study
+from relaycfg.sheet import figures
 from relaycfg.sheet.ink import GREY, HAIR, Flow, Ink, Sketch
 from relaycfg.sheet.settings_table import settings_table
 
@@ -76,10 +77,33 @@ def _undetected(ink: Ink) -> Flow:
     places = blind(ink)
     return [
         ink.say("decision.undetected_title", "body"),
-        *ink.items("decision.undetected", "item", study=study, worst=worst, relay=relay, blind=len(places)),
+        *ink.items(
+            "decision.undetected",
+            "item",
+            study=study,
+            worst=worst,
+            relay=relay,
+            blind=len(places),
+            **_lifted(study),
+            **_hot_joint(study),
+        ),
         *(ink.p(place, "item", bullet="×") for place in places[:SHOWN]),
         *_more(ink, len(places) - SHOWN, "sight"),
     ]
+
+
+def _lifted(study: Study) -> dict[str, object]:
+    """The board with the highest touch volts of those above their limit, and the break place that lifts it."""
+    above = [(b, t) for t in study.touch for b in t.boards if b.above.count]
+    board, at = max(above, key=lambda pair: pair[0].largest_v, default=(None, None))
+    return {"lifted": board, "lifted_at": at}
+
+
+def _hot_joint(study: Study) -> dict[str, object]:
+    """Most watts of any joint on which no tripping stage picks up, over the places the relay sees, and its place."""
+    burning = [(state.unseen_w, s.at) for s in study.breaks.joints for state in s.states if state.unseen_w is not None]
+    watts, at = max(burning, default=(None, ""))
+    return {"joint_w": figures.by_unit(watts, "W") if watts else "", "joint_at": at}
 
 
 def _exceptions(ink: Ink) -> Flow:

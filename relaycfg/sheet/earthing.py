@@ -54,14 +54,14 @@ def _boards(ink: Ink, t: PlaceTouch) -> list[list[Any]]:
 
 def _relay(ink: Ink) -> Flow:
     """What the relay does about metalwork above a limit, at the places it sees."""
-    study = ink.study
+    study, none = ink.study, ink.wording.text("earthing.not_modelled")
     rows = [
         [
             Markup("<b>{}</b>").format(t.at),
             figures.share(t.above),
             *(figures.by_unit(s.percent, "%") for s in (t.relay.never, t.relay.late, t.relay.within)),
-            figures.by_unit(t.relay.left_v, "V"),
-            t.relay.left_board,
+            none if t.relay.left_v is None else figures.by_unit(t.relay.left_v, "V"),
+            t.relay.left_board or figures.ABSENT,
         ]
         for t in study.touch
         if t.relay is not None and t.above.count
@@ -78,6 +78,7 @@ def _relay(ink: Ink) -> Flow:
             times=study.site.touch,
             steps=", ".join(f"{v:g} V {s:g} s" for v, s in study.site.touch.points),
             status=status(ink, study.site.touch.status),
+            alone=any(t.above.count and t.relay is not None and t.relay.left_v is None for t in study.touch),
         ),
     ]
 

@@ -1,5 +1,7 @@
 """The seconds and minutes after a break at every place the relay sees, where loads are no impedances."""
 
+import math
+
 import numpy as np
 
 from relaycfg.model.after_break_results import AfterBreak, Cascade, CoursePicture, Happening, PlaceAfterBreak
@@ -13,7 +15,7 @@ from relaycfg.study.cascade import cascades
 from relaycfg.study.course_trips import earliest, stage_instants, tripping
 from relaycfg.study.drift import drift
 from relaycfg.study.evidence import Evidence
-from relaycfg.study.fluctuation import COURSE_S, Courses, fluctuation, with_stalled
+from relaycfg.study.fluctuation import COURSE_S, LONGEST_S, Courses, fluctuation, with_stalled
 from relaycfg.study.load_volts import behind, is_electronic, mean_va
 from relaycfg.study.scenarios import seen_places
 from relaycfg.study.shares import share
@@ -35,9 +37,11 @@ def after_break(evidence: Evidence, active: tuple[ActiveStage, ...]) -> AfterBre
     edges = band_edges(evidence, places, active)
     balanced = balanced_rectifiers(site, places, _displacement_pickup(active), relay.device.detector)
     states = evidence.states.take(np.arange(min(COURSES, evidence.states.count)))
+    course_s = course_length_s(active)
+    possible = [a.clearing_s <= course_s for a in active]
     found, picture, most = [], None, -1
     for place in places:
-        courses = fluctuation(site, stalling, place, states, evidence.levels.nominal, evidence.seed)
+        courses = fluctuation(site, stalling, place, states, evidence.levels.nominal, evidence.seed, course_s)
         _, open_s = stage_instants(evidence, active, courses.taps, courses.duration_s)
         open_s = np.where(courses.unresolved, np.inf, open_s)
         any_s = earliest(open_s)
@@ -51,17 +55,23 @@ def after_break(evidence: Evidence, active: tuple[ActiveStage, ...]) -> AfterBre
                 int((moving & ~np.isfinite(any_s)).sum()),
                 int(courses.unresolved.sum()),
                 int(courses.several.sum()),
-                tuple(tripping(a.stage.label, s) for a, s in zip(active, open_s, strict=True)),
-                tripping(ANY, any_s),
+                tuple(tripping(a.stage.label, s, p) for a, s, p in zip(active, open_s, possible, strict=True)),
+                tripping(ANY, any_s, any(possible) or not active),
                 _cascades(evidence, place),
                 drift(evidence, evidence.network, place, active, evidence.seed),
                 edges.get(place),
                 balanced.get(place),
             )
         )
-        if len(courses.happened) > most:
+        if len(courses.happened) > most and not courses.unresolved.all():
             picture, most = _picture(evidence, place, states.names, courses, active, open_s), len(courses.happened)
-    return AfterBreak(COURSE_S, tuple(found), picture)
+    return AfterBreak(course_s, tuple(found), picture)
+
+
+def course_length_s(active: tuple[ActiveStage, ...]) -> float:
+    """Whole seconds in which the slowest stage can clear with one to spare, between COURSE_S and LONGEST_S."""
+    slowest = max((a.clearing_s for a in active), default=0.0)
+    return min(max(COURSE_S, float(math.ceil(slowest + 1.0))), LONGEST_S)
 
 
 def electronic_percent(site: Site, place: str) -> float:
@@ -82,13 +92,19 @@ def after_break_findings(result: AfterBreak | None, site: Site) -> list[Finding]
             f"break at {p.at}",
             f"break at {p.at}: {p.electronic_percent:.0f} % of the load behind it is electronic; in {p.silent} of "
             f"{p.fluctuating.count} courses in which loads drop out and start again no stage trips within "
-            f"{result.course_s:g} s",
+            f"{result.course_s:g} s{_too_slow(p)}",
             "a held reset, 59N within 1 s or 59 within 0.4 s where these are secure",
             "the volts wander, and a slow stage with instantaneous reset starts afresh each time",
         )
         for p in result.places
-        if p.electronic_percent > limit and p.silent
+        if p.electronic_percent > limit and p.silent and p.any_stage.possible
     ]
+
+
+def _too_slow(p: PlaceAfterBreak) -> str:
+    """Stages that the warning leaves out, as they need longer than the courses last."""
+    slow = [t.what for t in p.stages if not t.possible]
+    return f" ({', '.join(slow)} cannot within that time: not counted)" if slow else ""
 
 
 def _displacement_pickup(active: tuple[ActiveStage, ...]) -> float | None:

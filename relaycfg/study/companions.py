@@ -12,6 +12,7 @@ from relaycfg.model.site import NONE
 from relaycfg.network import LoadStates, Solved, blown_fuse, open_line, tap
 from relaycfg.network.states import OFF, RUNNING
 from relaycfg.study.evidence import Evidence
+from relaycfg.study.feeds import unable, unable_words
 from relaycfg.study.own_life import floating_star
 from relaycfg.study.reactions import opening_s
 from relaycfg.study.reading import first_causes
@@ -36,7 +37,8 @@ HIDDEN = "no message: the relay's own neutral wire is loose and shows every brea
 class _Pattern:
     """One truth: the taps [states, lines + 1] it leaves, which of them are solved, and the volts between lines.
 
-    ``lines`` [states, pairs] are read on the board itself, whatever the relay's own inputs have lost.
+    ``lines`` [states, pairs] are read on the board itself, whatever the relay's own inputs have lost; supply and coil
+    are fed from its ``board`` taps [states, lines + 1].
     """
 
     name: str
@@ -45,6 +47,7 @@ class _Pattern:
     taps: ComplexArray
     solved: BoolArray
     lines: FloatArray
+    board: ComplexArray
 
 
 def companions(evidence: Evidence, active: tuple[ActiveStage, ...]) -> Companions | None:
@@ -90,14 +93,15 @@ def _own_wires(evidence: Evidence, sound: Solved) -> Iterator[_Pattern]:
     whole = _of(evidence, "", "other", SENSING, [sound])
     missing = whole.taps.copy()
     missing[np.arange(len(missing)), np.arange(len(missing)) % (missing.shape[1] - 1)] = 0
-    yield _Pattern("sensing fuse open", "other", SENSING, missing, whole.solved, whole.lines)
+    yield _Pattern("sensing fuse open", "other", SENSING, missing, whole.solved, whole.lines, whole.taps)
     loose = floating_star(whole.taps)
-    yield _Pattern("relay's own neutral loose, board sound", "own wire", HIDDEN, loose, whole.solved, whole.lines)
+    sound_name = "relay's own neutral loose, board sound"
+    yield _Pattern(sound_name, "own wire", HIDDEN, loose, whole.solved, whole.lines, whole.taps)
     place = next(iter(seen_places(evidence.site, evidence.relay)), None)
     if place is not None:
         lost = _of(evidence, "", "own wire", HIDDEN, [evidence.solved[place]])
         name = f"the same, neutral lost at {place}"
-        yield _Pattern(name, "own wire", HIDDEN, floating_star(lost.taps), lost.solved, lost.lines)
+        yield _Pattern(name, "own wire", HIDDEN, floating_star(lost.taps), lost.solved, lost.lines, lost.taps)
 
 
 def _of(evidence: Evidence, name: str, kind: Truth, message: str, parts: list[Solved]) -> _Pattern:
@@ -105,7 +109,7 @@ def _of(evidence: Evidence, name: str, kind: Truth, message: str, parts: list[So
     taps = np.concatenate([tap(part, board, evidence.relay.earth_reference) for part in parts])
     converged = np.concatenate([part.converged for part in parts])
     lines = np.abs(evidence.site.supply.geometry.line_to_line(taps[:, :-1]))
-    return _Pattern(name, kind, message, taps, converged, lines)
+    return _Pattern(name, kind, message, taps, converged, lines, taps)
 
 
 def _with_motors(states: LoadStates, running: int) -> LoadStates:
@@ -120,16 +124,22 @@ def _half(emf: ComplexArray, whole: int) -> ComplexArray:
 
 
 def _shown(evidence: Evidence, active: tuple[ActiveStage, ...], pattern: _Pattern) -> Companion:
-    """The state of median displacement of those solved."""
+    """The state of median displacement of those solved; no stage operates there while supply or coil is unfed."""
     there = np.flatnonzero(pattern.solved)
     rising = there[np.argsort(np.abs(pattern.taps[there, :-1].mean(axis=-1)), kind="stable")]
+    unfed = unable(evidence, pattern.board)
+    fed = rising[~unfed[rising]]
     k = int(rising[len(rising) // 2])
     seconds = opening_s(evidence, active, pattern.taps[k : k + 1])[:, 0]
-    order = [j for j in np.argsort(seconds, kind="stable") if np.isfinite(seconds[j])]
+    order = [j for j in np.argsort(seconds, kind="stable") if np.isfinite(seconds[j]) and not unfed[k]]
+    # Which line is lost decides whether the relay is fed: 59N is asked for in a state in which it is.
+    middle = [k] if not unfed[k] else [int(fed[len(fed) // 2])] if len(fed) else []
+    picked = np.isfinite(opening_s(evidence, active, pattern.taps[middle]))
     l_n, l_l = np.abs(pattern.taps[k : k + 1, :-1]), pattern.lines[k : k + 1]
     nominal_v = evidence.site.supply.nominal_v
-    displaced = any(active[j].function is Function.DISPLACEMENT for j in order)
-    beware = "; 59N operates too, so it alone proves no lost neutral" if displaced and pattern.kind == "other" else ""
+    displaced = any(a.function is Function.DISPLACEMENT and p.any() for a, p in zip(active, picked, strict=True))
+    too = "where the relay is fed 59N operates" if unfed[k] else "59N operates too"
+    beware = f"; {too}, so it alone proves no lost neutral" if displaced and pattern.kind == "other" else ""
     return Companion(
         pattern.name,
         pattern.kind,
@@ -137,6 +147,8 @@ def _shown(evidence: Evidence, active: tuple[ActiveStage, ...], pattern: _Patter
         tuple(float(v) for v in l_l[0]),
         float(abs(pattern.taps[k, :-1].mean())),
         tuple(Opening(active[j].stage.label, float(seconds[j])) for j in order),
+        unable_words(evidence, pattern.board[k]),
+        share(int(unfed[there].sum()), len(there)),
         displaced,
         first_causes(l_n, None, nominal_v)[0],
         first_causes(l_n, l_l, nominal_v)[0],

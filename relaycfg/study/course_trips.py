@@ -52,11 +52,11 @@ def earliest(instants: FloatArray) -> FloatArray:
     return found
 
 
-def tripping(what: str, instants: FloatArray) -> Tripping:
-    """Share, median and 95 percent point of instants [courses]."""
+def tripping(what: str, instants: FloatArray, possible: bool) -> Tripping:
+    """Share, median and 95 percent point of instants [courses]; ``possible`` where the courses last long enough."""
     there = np.isfinite(instants)
     return Tripping(
-        what, share(int(there.sum()), len(instants)), point(instants[there], 50), point(instants[there], 95)
+        what, share(int(there.sum()), len(instants)), point(instants[there], 50), point(instants[there], 95), possible
     )
 
 

@@ -111,7 +111,7 @@ def _advice(settings: Settings, found: Sequence[JointSweep], ladder: Ladder | No
     told = "".join(f"; {_spoken(s.at, alarm, trip)}" for s, alarm, trip in sooner)
     waits = "no settable delay outlasts what must hold" if delay_s is None else f"delay {delay_s:g} s"
     if not sooner:
-        verdict = "Not worth setting, it speaks after no less heat than a trip"
+        verdict = "Not worth setting, it alarms after no less heat than a trip"
     elif not free:
         verdict = "No stage of 59N is free for it"
     else:
@@ -126,7 +126,7 @@ def _advice(settings: Settings, found: Sequence[JointSweep], ladder: Ladder | No
 def _spoken(place: str, alarm: JointSight, trip: JointSight) -> str:
     """What burns before the alarm speaks and before the first trip."""
     trips = f"the first trip after up to {trip.before_w:.0f} W" if trip.seen else "no stage trips"
-    return f"break at {place}: it speaks after up to {alarm.before_w:.0f} W in the joint, {trips}"
+    return f"break at {place}: it alarms after up to {alarm.before_w:.0f} W in the joint, {trips}"
 
 
 def _counted(ladder: Ladder) -> str:

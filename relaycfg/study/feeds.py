@@ -66,11 +66,39 @@ def trip_fails(evidence: Evidence, scenario: Scenarios) -> BoolArray:
 
     An undervoltage release opens by itself where its own volts are below its range, whatever the relay does.
     """
-    supply_low, supply_high = _beyond(evidence, scenario, evidence.relay.supply)
-    coil_low, coil_high = _beyond(evidence, scenario, evidence.relay.trip_coil)
+    supply_low, supply_high = _beyond(evidence, scenario.taps, evidence.relay.supply)
+    coil_low, coil_high = _beyond(evidence, scenario.taps, evidence.relay.trip_coil)
     if evidence.relay.trip_coil_kind == RELEASE:
         return ~coil_low & (supply_low | supply_high | coil_high)
     return supply_low | supply_high | coil_low | coil_high
+
+
+def unable(evidence: Evidence, taps: ComplexArray) -> BoolArray:
+    """Board taps [states, lines + 1] at which no stage can open the switch: supply or coil is out of its range.
+
+    A release below its range has opened the switch already, which is no stage's doing.
+    """
+    found = np.zeros(len(taps), bool)
+    for feed in (evidence.relay.supply, evidence.relay.trip_coil):
+        low, high = _beyond(evidence, taps, feed)
+        found |= low | high
+    return found
+
+
+def unable_words(evidence: Evidence, tap: ComplexArray) -> str:
+    """Which feed is out of its range at one board tap [lines + 1], with its volts; empty where none is."""
+    found = []
+    for held, _, feed in _from_system(evidence):
+        low, high = (bool(side[0]) for side in _beyond(evidence, tap[None], feed))
+        if not low and not high:
+            continue
+        volts = f"({_volts(evidence.site.supply.geometry, tap[None], feed)[0]:.0f} V)"
+        name = "relay" if held == "supply" else "coil"
+        if low and held == "coil" and evidence.relay.trip_coil_kind == RELEASE:
+            found.append(f"release opens by itself {volts}")
+        else:
+            found.append(f"{name} unfed {volts}" if low else f"{name} above its range {volts}")
+    return ", ".join(found)
 
 
 def fails_though_self_opening(evidence: Evidence, scenario: Scenarios) -> BoolArray:
@@ -78,8 +106,8 @@ def fails_though_self_opening(evidence: Evidence, scenario: Scenarios) -> BoolAr
 
     Either of them without volts then opens the switch; above its range nothing is promised of either.
     """
-    supply_low, supply_high = _beyond(evidence, scenario, evidence.relay.supply)
-    coil_low, coil_high = _beyond(evidence, scenario, evidence.relay.trip_coil)
+    supply_low, supply_high = _beyond(evidence, scenario.taps, evidence.relay.supply)
+    coil_low, coil_high = _beyond(evidence, scenario.taps, evidence.relay.trip_coil)
     return ~(supply_low | coil_low) & (supply_high | coil_high)
 
 
@@ -99,7 +127,7 @@ def _range(evidence: Evidence, held: Held, what: str, feed: Feed) -> FeedRange:
         volts = _volts(evidence.site.supply.geometry, scenario.taps, feed)[scenario.resolved]
         harm = scenario.harmful[scenario.resolved]
         lowest, highest = min(lowest, float(volts.min(initial=np.inf))), max(highest, float(volts.max(initial=0.0)))
-        low, high = (side[scenario.resolved] for side in _beyond(evidence, scenario, feed))
+        low, high = (side[scenario.resolved] for side in _beyond(evidence, scenario.taps, feed))
         harmful += int(harm.sum())
         failing += int((harm & (high if released else low | high)).sum())
     return FeedRange(what, feed.between, lowest, highest, _stated(feed), harmful, failing)
@@ -112,7 +140,7 @@ def _life(evidence: Evidence, active: tuple[ActiveStage, ...], held: Held, what:
     found = _range(evidence, held, what, feed)
     longest: list[float] = []
     for scenario in evidence.scenarios:
-        above = _beyond(evidence, scenario, feed)[1] & scenario.resolved
+        above = _beyond(evidence, scenario.taps, feed)[1] & scenario.resolved
         if held == "coil" and kind == "shunt":
             longest += [evidence.relay.coil_and_breaker_s] if above.any() else []
         else:
@@ -124,8 +152,8 @@ def _life(evidence: Evidence, active: tuple[ActiveStage, ...], held: Held, what:
         found.lowest_v,
         found.highest_v,
         found.allowed,
-        _share(evidence, lambda e, s: _beyond(e, s, feed)[0]),
-        _share(evidence, lambda e, s: _beyond(e, s, feed)[1]),
+        _share(evidence, lambda e, s: _beyond(e, s.taps, feed)[0]),
+        _share(evidence, lambda e, s: _beyond(e, s.taps, feed)[1]),
         above_s if np.isfinite(above_s) else None,
         released,
         _held_losses(evidence, feed) if released else (),
@@ -169,12 +197,12 @@ def _stated(feed: Feed) -> tuple[float, float] | None:
     return None if feed.low_v is None or feed.high_v is None else (feed.low_v, feed.high_v)
 
 
-def _beyond(evidence: Evidence, scenario: Scenarios, feed: Feed) -> tuple[BoolArray, BoolArray]:
-    """States [states] in which the feed is below, and above its range; never where that or the feed is another's."""
-    nowhere = np.zeros(scenario.deadline_s.shape, bool)
+def _beyond(evidence: Evidence, taps: ComplexArray, feed: Feed) -> tuple[BoolArray, BoolArray]:
+    """Taps [states] at which the feed is below, and above its range; never where that or the feed is another's."""
+    nowhere = np.zeros(len(taps), bool)
     if feed.between == "auxiliary":
         return nowhere, nowhere
-    volts = _volts(evidence.site.supply.geometry, scenario.taps, feed)
+    volts = _volts(evidence.site.supply.geometry, taps, feed)
     low = nowhere if feed.low_v is None else volts < feed.low_v
     high = nowhere if feed.high_v is None else volts > feed.high_v
     return low, high

@@ -11,8 +11,8 @@ from relaycfg.network import LoadStates, Network, tap
 from relaycfg.network.states import OFF, RUNNING, STARTING
 from relaycfg.study.load_volts import load_volts
 
-COURSE_S, STEP_S = 5.0, 0.02
-"""Length and grain of a course; a load answers one step (a cycle at 50 Hz) after its volts."""
+COURSE_S, LONGEST_S, STEP_S = 5.0, 12.0, 0.02
+"""Least and greatest length of a course, and its grain; a load answers one step (a cycle at 50 Hz) after its volts."""
 SPREAD = 0.2
 """Restart times of single loads lie so far about theirs, each course its own draw (own choice)."""
 ON, OUT, STALLED, GONE = range(4)
@@ -54,8 +54,18 @@ def with_stalled(site: Site) -> Site:
     return replace(site, loads=site.loads + stalled)
 
 
-def fluctuation(site: Site, network: Network, place: str, states: LoadStates, emf: ComplexArray, seed: int) -> Courses:
-    """One course a state, on a network of ``with_stalled(site)``; all that changes at a step is solved together.
+def fluctuation(
+    site: Site,
+    network: Network,
+    place: str,
+    states: LoadStates,
+    emf: ComplexArray,
+    seed: int,
+    course_s: float = COURSE_S,
+) -> Courses:
+    """One course of ``course_s`` a state; all that changes at a step is solved together.
+
+    The network is one of ``with_stalled(site)``.
 
     On below its cut-out a load drops out after a step; out, it starts again when its volts have been at or above its
     lower band edge (and cut-out) for its restart time. A motor below its stall volts stalls after the stall time and
@@ -64,7 +74,7 @@ def fluctuation(site: Site, network: Network, place: str, states: LoadStates, em
     """
     assert site.relay is not None
     play = _Play(site, states, seed)
-    steps = round(COURSE_S / STEP_S)
+    steps = round(course_s / STEP_S)
     board = network.boards.index(site.relay.measures_at)
     now = np.zeros(states.count, int)
     unresolved, several = np.zeros((2, states.count), bool)

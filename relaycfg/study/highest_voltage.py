@@ -108,6 +108,8 @@ def _switches(site: Site, place: str) -> tuple[ComplexArray, tuple[_Switch, ...]
         if item.board not in behind or not item.to_neutral or item.usage == 0:
             continue
         power = item.running_va if isinstance(item, Motor) else item.demand * complex(item.p_w, item.q_var)
+        if power == 0:
+            continue
         admittance = np.zeros_like(fixed)
         admittance[list(item.lines)] = power.conjugate() / len(item.lines) / site.supply.nominal_v**2
         if item.usage == 1:

@@ -36,6 +36,12 @@ def mean_va(load: Load) -> float:
     return abs(complex(load.p_w, load.q_var)) * load.usage * load.demand
 
 
+def other_users(site: Site, place: str, trips: str) -> bool:
+    """Whether the model has loads to neutral behind a break that the relay's switch does not disconnect."""
+    switched = site.behind(trips)
+    return any(load.board not in switched for load in behind(site, place))
+
+
 def behind(site: Site, place: str) -> tuple[Load, ...]:
     """Loads to neutral whose neutral is lost by a break at ``place``; generation is none of them."""
     boards = site.behind(place)

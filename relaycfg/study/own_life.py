@@ -12,6 +12,7 @@ from relaycfg.study.deadlines import high_deadline_s
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.feeds import feed_lives, trip_shares
 from relaycfg.study.levels import NOMINAL
+from relaycfg.study.load_volts import other_users
 from relaycfg.study.reactions import as_read, opening_s
 from relaycfg.study.scenarios import Scenarios
 from relaycfg.study.shares import share
@@ -80,12 +81,13 @@ def _worst_tap(evidence: Evidence, healthy: ComplexArray) -> ComplexArray:
 
 
 def _cleared(evidence: Evidence, active: tuple[ActiveStage, ...], loose: bool) -> Share:
-    """Harmful states at nominal supply cleared in time under each load model that harms."""
+    """Harmful states at nominal supply cleared in time under each load model that harms; unresolved ones are not."""
     nominal = [s for s in evidence.scenarios if s.level == NOMINAL]
     count = of = 0
     for pair in zip(nominal[::2], nominal[1::2], strict=True):
-        wanted = pair[0].resolved & pair[1].resolved & (pair[0].harmful | pair[1].harmful)
-        done = wanted.copy()
+        resolved = pair[0].resolved & pair[1].resolved
+        wanted = pair[0].harmful | pair[1].harmful | ~resolved
+        done = wanted & resolved
         for scenario in pair:
             done &= ~scenario.harmful | cleared(active, _read(evidence, scenario, loose), evidence)
         count, of = count + int(done.sum()), of + int(wanted.sum())
@@ -100,16 +102,19 @@ def _poles(evidence: Evidence, after: dict[str, Solved]) -> Poles:
     site, network, relay = evidence.site, evidence.network, evidence.relay
     spread_s = site.reference.pole_late_s
     behind = [network.boards.index(b) for b in site.behind(relay.trips)]
-    metalwork = [np.abs(solved.pe_earth[behind][:, solved.converged]) for solved in after.values()]
+    pens = [place for place in after if site.conductor(place) == "PEN"]
+    not_modelled = tuple(place for place in pens if not other_users(site, place, relay.trips))
+    told = [after[place] for place in pens or after if place not in not_modelled]
+    metalwork = [np.abs(solved.pe_earth[behind][:, solved.converged]) for solved in told]
     known = [float(np.nanmax(m)) for m in metalwork if m.size and not np.isnan(m).all()]
     after_pe_v = max(known, default=None)
     alone = evidence.solved.get(relay.trips)
     if alone is None or not alone.converged.any():
-        return Poles(relay.poles == "lines and neutral", spread_s, None, None, after_pe_v)
+        return Poles(relay.poles == "lines and neutral", spread_s, None, None, after_pe_v, not_modelled)
     volts = np.abs(alone.l_n[behind]).max(axis=(0, 1))[alone.converged]
     hurt = int((high_deadline_s(site.equipment, volts) < spread_s).sum())
     early = share(hurt, len(volts))
-    return Poles(relay.poles == "lines and neutral", spread_s, float(volts.max()), early, after_pe_v)
+    return Poles(relay.poles == "lines and neutral", spread_s, float(volts.max()), early, after_pe_v, not_modelled)
 
 
 def _operating(evidence: Evidence, active: tuple[ActiveStage, ...], taps: ComplexArray) -> tuple[str, ...]:

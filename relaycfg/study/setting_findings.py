@@ -207,7 +207,7 @@ def rules(evidence: Evidence, settings: Settings, existing: bool, again: Reconne
     if evidence.relay.poles == "lines and neutral" and evidence.site.conductor(evidence.relay.trips) == "PEN":
         found.append(
             Finding(
-                "warning",
+                "exception",
                 "poles",
                 f"the switch of {evidence.relay.trips} opens the neutral, and the incoming conductor is a PEN: a PEN "
                 "is never switched",

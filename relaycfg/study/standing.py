@@ -123,7 +123,8 @@ def _displaced(site: Site, taps: ComplexArray) -> ComplexArray:
 def _direction(phasors: ComplexArray) -> ComplexArray:
     """Unit phasors along the given ones; along the reference where there is nothing but rounding."""
     size = np.abs(phasors)
-    return np.where(size > TINY_V, phasors / np.maximum(size, TINY_V), 1.0)
+    there = size > TINY_V
+    return np.where(there, phasors / np.where(there, size, 1.0), 1.0)
 
 
 def _within(geometry: Geometry, tap: ComplexArray, least_v: float, most_v: float) -> ComplexArray:

@@ -12,6 +12,7 @@ from relaycfg.network import LoadStates, Network, Solved
 from relaycfg.network.states import OFF
 from relaycfg.study.evidence import Evidence
 from relaycfg.study.levels import NOMINAL
+from relaycfg.study.load_volts import other_users
 from relaycfg.study.shares import share
 from relaycfg.study.stages import ActiveStage, operating_s
 
@@ -27,7 +28,8 @@ def touch_voltages(evidence: Evidence, stages: tuple[ActiveStage, ...]) -> tuple
             opened = network.solve(
                 place, _disconnected(site, evidence.states, evidence.relay.trips), evidence.levels.nominal
             )
-            relay = _relay(site, network, solved, opened, operated[place])
+            known = site.conductor(place) != "PEN" or other_users(site, place, evidence.relay.trips)
+            relay = _relay(site, network, solved, opened if known else None, operated[place])
         found.append(place_touch(site, network, place, evidence.states, solved, relay))
     return tuple(found)
 
@@ -38,17 +40,17 @@ def place_touch(
     """One place from its solved states."""
     volts, limits = _volts(solved), _limits(site, network)
     known = [k for k in range(len(network.boards)) if not np.isnan(solved.pe_earth[k]).any()]
-    boards = []
+    boards, resolved = [], int(solved.converged.sum())
     for k in known:
         top = int(np.argmax(volts[k]))
-        above = share(int((volts[k] > limits[k]).sum()), states.count)
+        above = share(int((volts[k] > limits[k]).sum()), resolved)
         boards.append(BoardTouch(network.boards[k], float(limits[k]), float(volts[k, top]), states.names[top], above))
     anywhere = (volts > limits[:, None]).any(axis=0)
     return PlaceTouch(
         place,
         site.conductor(place),
         tuple(sorted(boards, key=lambda b: -b.largest_v)),
-        share(int(anywhere.sum()), states.count),
+        share(int(anywhere.sum()), resolved),
         int((~solved.converged).sum()),
         tuple(b for k, b in enumerate(network.boards) if k not in known),
         relay,
@@ -67,21 +69,24 @@ def due_s(times: TouchTimes, volts: FloatArray, limits: FloatArray) -> FloatArra
     return np.where(volts > limits, longest, np.inf)
 
 
-def _relay(site: Site, network: Network, solved: Solved, opened: Solved, operated: FloatArray) -> RelayTouch:
+def _relay(site: Site, network: Network, solved: Solved, opened: Solved | None, operated: FloatArray) -> RelayTouch:
+    """``opened`` is None where what else hangs on the broken PEN is not in the model: its 0 V would be no finding."""
     limits = _limits(site, network)[:, None]
-    volts, left = _volts(solved), _volts(opened)
+    volts = _volts(solved)
     above = (volts > limits).any(axis=0)
     due = due_s(site.touch, volts, limits).min(axis=0)
     within: BoolArray = above & (operated <= due)
     never: BoolArray = above & ~np.isfinite(operated)
     late = above & ~within & ~never
     many = int(above.sum())
+    shares = (share(int(within.sum()), many), share(int(late.sum()), many), share(int(never.sum()), many))
+    if opened is None:
+        return RelayTouch(*shares, None, "", None)
+    left = _volts(opened)
     stays = left.max(axis=1)
     top = int(np.argmax(stays))
     return RelayTouch(
-        share(int(within.sum()), many),
-        share(int(late.sum()), many),
-        share(int(never.sum()), many),
+        *shares,
         float(stays[top]),
         network.boards[top],
         share(int((left > limits).any(axis=0).sum()), left.shape[1]),

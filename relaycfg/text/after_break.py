@@ -11,15 +11,8 @@ from relaycfg.text.layout import heading, table, wrapped
 SHOWN = 2
 """Places shown, those with the most courses that nothing trips in first; the JSON and the sheet have all of them."""
 HEADS = (
-    "Break at",
-    "No stage",
-    "Some stage trips",
-    "Median s",
-    "95 % s",
-    "Drop out",
-    "of them none",
-    "Roots",
-    "Unres.",
+    ("", "", "", "", "", "Loads", "of these", "several", "not"),
+    ("Break at", "No stage", "Some stage trips", "Median s", "95 % s", "drop out", "no trip", "solutions", "solved"),
 )
 
 
@@ -29,7 +22,7 @@ def after_break(study: Study) -> list[str]:
     if result is None or not result.places:
         return []
     places = sorted(result.places, key=lambda p: p.any_stage.share.count - p.any_stage.share.of)
-    lines = [*heading(_title(result)), *table(HEADS, [_row(p) for p in places[:SHOWN]])]
+    lines = [*heading(_title(result)), *table(HEADS[0], [HEADS[1], *(_row(p) for p in places[:SHOWN])])]
     for sentence in (_cascade(places), _drift(places), _edge(places), _balanced(places)):
         lines += wrapped(sentence, "* ") if sentence else []
     more = len(places) - SHOWN
@@ -76,11 +69,11 @@ def _drift(places: list[PlaceAfterBreak]) -> str:
         return ""
     _, at, d = max(found, key=lambda f: f[0])
     shift = f"V0 {units.whole_volts(d.lowest_v)} to {units.whole_volts(d.highest_v)} V, "
-    other = " (not the only root)" if d.step_several else ""
+    other = " (one of several)" if d.step_several else ""
     return (
-        f"Left on {units.plain(d.minutes)} min at {place(at)}: {shift if math.isfinite(d.highest_v) else ''}"
-        f"{units.parts(d.changes_per_minute)} steps a minute up to "
-        f"{units.percent(d.largest_step_percent)} %{other}."
+        f"Left {units.plain(d.minutes)} min at {place(at)}: {shift if math.isfinite(d.highest_v) else ''}"
+        f"{units.parts(d.changes_per_minute)} steps/min up to "
+        f"{units.percent(d.largest_step_percent)} % of nominal{other}."
     )
 
 
@@ -93,7 +86,7 @@ def _edge(places: list[PlaceAfterBreak]) -> str:
     volts = " / ".join(units.whole_volts(most) for _, most in e.moved_v)
     stated, *moved = (units.percent(s.percent) for s in e.core)
     core = f"core {stated} % is {' / '.join(moved)} %"
-    return f"Band edge {low} / {high} pu at {place(at)}: up to {volts} V moved, {core}."
+    return f"Band edge {low} / {high} x nominal at {place(at)} moves up to {volts} V, {core}."
 
 
 def _balanced(places: list[PlaceAfterBreak]) -> str:

@@ -128,15 +128,16 @@ def touch_v(row: BreakRow) -> float | None:
 def _sampled(summaries: Sequence[PlaceSummary], most: int, few: int) -> list[str]:
     if not summaries:
         return []
-    heads = ["Place", "Harmful", "Undetected", "Median", "95 %", "Most V", "PE V", "Unres."]
+    heads = ["Place", "Harmful", "Undetected", "Median", "95 %", "Most V", "PE V", "not solved"]
     rows = []
     for s in summaries[:most]:
         highest = s.percentiles[0] if s.percentiles else None
         points = (highest.p50, highest.p95, highest.largest) if highest else (None, None, None)
-        hidden = "depends on settings" if s.seen and not s.classes else share(s.undetected)
+        hidden = "not seen" if not s.seen else share(s.undetected) if s.classes else "depends on settings"
         touch, lost = units.volts(s.touch_v), units.count(s.unresolved)
         rows.append([place(s.at), share(s.harmful), hidden, *map(units.volts, points), touch, lost])
-    lines = heading(f"Over {units.count(summaries[0].samples)} sampled load states, highest line-to-neutral anywhere")
+    many = units.count(summaries[0].samples)
+    lines = heading(f"Over {many} sampled load states at nominal supply, highest line-to-neutral anywhere")
     lines += [*table(heads, rows, among=[s.at for s in summaries]), *_more(len(summaries), most)]
     lines += wrapped("Shares are of modelled load states with their 95 % interval, not probabilities of damage.")
     harmed = [s for s in summaries if s.boards_harmed]

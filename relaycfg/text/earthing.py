@@ -6,13 +6,16 @@ from relaycfg.model.touch_results import PlaceTouch
 from relaycfg.text.figures import cited, counted, place, share
 from relaycfg.text.layout import heading, table, wrapped
 
+NOT_MODELLED = "not modelled"
+"""Stands for volts with the switch open where the PEN has no other user in the model."""
+
 
 def touch(study: Study) -> list[str]:
     """Places with metalwork above a limit, and what the relay does about it; how many others there are."""
     if not study.touch:
         return []
     above = [t for t in study.touch if t.above.count]
-    heads = ["Place", "Wire", "Highest V", "at", "Above its limit", "Open in time", "late", "never", "Left V"]
+    heads = ["Place", "Wire", "Most V", "at", "Above its limit", "In time", "late", "never", "V with switch open"]
     rows = [_row(t) for t in above]
     lines = heading("Touch voltage, metalwork against remote earth")
     lines += table(heads, rows, 2, (0, 3)) if rows else []
@@ -32,7 +35,7 @@ def _row(t: PlaceTouch) -> list[str]:
     does = ["not seen", *[units.ABSENT] * 3]
     if r is not None:
         percents = [f"{units.percent(s.percent)} %" for s in (r.within, r.late, r.never)]
-        does = [*percents, units.volts(r.left_v)]
+        does = [*percents, NOT_MODELLED if r.left_v is None else units.volts(r.left_v)]
     return [place(t.at), t.conductor, units.volts(worst.largest_v), worst.board, share(t.above), *does]
 
 
@@ -47,6 +50,8 @@ def _others(study: Study, above: int) -> str:
     lost = sum(t.unresolved for t in study.touch)
     if lost:
         parts.append(f"{counted(lost, 'state')} without a solution left out.")
+    if any(t.above.count and t.relay is not None and t.relay.left_v is None for t in study.touch):
+        parts.append(f"{NOT_MODELLED.capitalize()}: other users of this PEN are not in the model.")
     bare = sorted({b for t in study.touch for b in t.without_pe})
     if bare:
         parts.append(f"No PE in the model, so no figure: {', '.join(bare)}.")

@@ -85,7 +85,8 @@ def break_classes(study: Study) -> list[str]:
     """Each place: shares of load states by harm and operation, the undetected ones first."""
     lines: list[str] = []
     for s in study.breaks.summaries:
-        first = f"{place(s.at)} ({s.conductor}): harmful {share(s.harmful)}, undetected break {share(s.undetected)}"
+        hidden = f"undetected {share(s.undetected)}" if s.seen else "not seen"
+        first = f"{place(s.at)} ({s.conductor}): harmful {share(s.harmful)}, {hidden}"
         lines += wrapped(first + (f", unresolved {units.count(s.unresolved)}" if s.unresolved else ""))
         rows = [
             f"{class_words(name)} {share(value)}"
@@ -97,8 +98,12 @@ def break_classes(study: Study) -> list[str]:
             lines += wrapped(f"harm the relay's switch does not disconnect: {shown(s.not_disconnected, 5)}", "    ")
     if not lines:
         return []
-    note = "Shares are of modelled load states, not probabilities of damage."
-    return [*heading(f"Breaks over {units.count(study.samples)} load states"), *lines, note]
+    note = (
+        "Undetected: no harm and no operation under at least one load model; the classes take both load "
+        "models together: harmed under either, cleared under each that harms. Shares are of modelled load states, not "
+        "probabilities of damage."
+    )
+    return [*heading(f"Breaks over {units.count(study.samples)} load states"), *lines, *wrapped(note)]
 
 
 def blind_spots(study: Study) -> list[str]:
@@ -112,7 +117,8 @@ def blind_spots(study: Study) -> list[str]:
     lines += listing(["Place", "Wire", "Why not seen"], rows, 2) if rows else []
     lines += wrapped(f"Breaks not seen from here, the warnings say why: {named}.") if named else []
     seen = [f"{place(s.at)} {share(s.undetected)}" for s in study.breaks.summaries if s.seen]
-    lines += wrapped(f"Load states in which a break seen from here does nothing yet: {'; '.join(seen)}") if seen else []
+    undetected = "Undetected, no harm and no operation under at least one load model, of breaks seen from here"
+    lines += wrapped(f"{undetected}: {'; '.join(seen)}") if seen else []
     ratios = [
         f"{name} never" if k is None else f"{name} from {units.load_ratio(k, len(geometry.names))}"
         for name, k in study.smallest_asymmetry.items()

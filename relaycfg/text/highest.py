@@ -25,8 +25,8 @@ def highest(results: Sequence[HighestVoltage], most: int, named: bool) -> list[s
     each = "; ".join(f"{place(h.at)} {_proved(h)} ({units.volts(h.modelled_v)})" for h in results[:most])
     more = f"; and {len(results) - most} more" if len(results) > most else ""
     return wrapped(
-        "Highest of all on/off combinations of constant impedances on one stiff bar, proved (in brackets: that one in "
-        f"the network, as modelled; a sampled state may be above it), V: {each}{more}."
+        "For constant impedances on one stiff bar only: highest of all on/off combinations, proved (in brackets: that "
+        f"one in the network, as modelled; a sampled state may be above it), V: {each}{more}."
     ) + wrapped(f'Shown again, with the loads that are on: --at "{results[0].at}" --state worst')
 
 

@@ -55,13 +55,24 @@ def loose_joints(study: Study) -> list[str]:
     seen = [s for s in study.breaks.joints if s.unseen is not None]
     if not seen:
         return []
-    heads = ["Place", "Load state", "Unseen W", "First to trip", "at ohm", "W by then", "Most W", "at ohm", "V across"]
+    heads = [
+        "Place",
+        "Load state",
+        "W, no pickup",
+        "First to trip",
+        "at ohm",
+        "W by then",
+        "Most W",
+        "at ohm",
+        "V across",
+    ]
     rows = [_row(sweep, state) for sweep in seen for state in sweep.states]
     lines = [*heading("Loose joint in the neutral"), *table(heads, rows, 2)]
     limit = study.site.judgement.hot_joint_w
     shares = "; ".join(f"{place(s.at)} {share(s.unseen)}" for s in seen if s.unseen is not None)
     many = units.count(seen[0].unseen.of) if seen[0].unseen is not None else ""
     lines += wrapped(
+        "W, no pickup: most W of any joint on which no tripping stage picks up. "
         f"Of the first {many} load states, those with a joint of {units.watts(limit)} W or more that no stage sees: "
         f"{shares}"
     )

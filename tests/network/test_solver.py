@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from relaycfg.model.geometry import ComplexArray
 from relaycfg.model.site import Site
 from relaycfg.network import Network, connected, healthy_emf, join, least, sampled
 from relaycfg.network.loadlaw import Law
@@ -126,9 +127,9 @@ def test_usual_states_need_no_more_than_the_usual_schedule(monkeypatch: pytest.M
     made = site([board("A", cable=cable(0.2 + 0.1j))], [*loads, *steady], line_ohm=0.02 + 0.02j, electrode_ohm=5.0)
     chased: list[int] = []
 
-    def watched(problem: Problem, law: Law, at: Iterate, *start: complex) -> Solution:
+    def watched(problem: Problem, law: Law, about_s: ComplexArray, at: Iterate, *start: complex) -> Solution:
         chased.append(law.z_re.shape[1])
-        return chase(problem, law, at, *start)
+        return chase(problem, law, about_s, at, *start)
 
     monkeypatch.setattr("relaycfg.network.network.chase", watched)
     solved = Network(made).solve("A", sampled(made, 1000, 6), healthy_emf(made))

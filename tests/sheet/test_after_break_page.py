@@ -1,6 +1,7 @@
 """The section "After a break": every figure of the study stands there, and so does its course."""
 
 import io
+from dataclasses import replace
 
 import pypdf
 import pytest
@@ -51,6 +52,20 @@ def test_lost_loads_stand_with_their_volts_in_order(page):
     study, text = page
     cascade = next(c for p in study.after_break.places for c in p.cascades if c.lost)
     assert "; ".join(f"{lost.load} at {lost.highest_v:.1f} V" for lost in cascade.lost) in text
+
+
+def test_states_in_which_nothing_fails_take_no_row_and_are_said_once(page):
+    study, text = page
+    places = tuple(
+        replace(p, cascades=tuple(replace(c, lost=(), resolved=True) for c in p.cascades))
+        for p in study.after_break.places
+    )
+    none = replace(study, after_break=replace(study.after_break, places=places))
+    pages = pypdf.PdfReader(io.BytesIO(render(none, templates_dir(), "0.0.0"))).pages
+    bare = " ".join(" ".join(p.extract_text() for p in pages).split())
+    assert bare.count("is a load with a stated damage voltage above it") == 1
+    assert "In this order, at the highest volts anywhere" not in bare
+    assert "is a load with a stated damage voltage above it" not in text
 
 
 def test_the_sheet_no_longer_calls_cycling_loads_unexamined(page):

@@ -57,7 +57,8 @@ def page_of(study, templates, title):
 def test_the_page_on_joints_says_first_that_a_voltage_relay_is_no_hot_joint_detector(study, templates):
     text = page_of(study, templates, "Loose joint in the neutral")
     text = text[text.index("Loose joint in the neutral") :]
-    assert text.index("no hot-joint detector") < text.index("Each neutral that can break") < text.index("Unseen First")
+    lead = text.index("Each neutral that can break")
+    assert text.index("no hot-joint detector") < lead < text.index("no stage picked up First")
     assert "70.0 % (65.3 to 74.3) of the first 400" in text
     assert "336 W 59N stage 1 2.58 ohm 336 W 405 W 5 ohm 45.0 V" in text
     assert "405 W none" in text
@@ -95,6 +96,17 @@ def test_the_installer_is_told_what_an_electrode_of_its_own_takes(study, templat
     local = replace(study, site=replace(study.site, relay=replace(study.site.relay, earth_reference="local PE")))
     card = " ".join(PdfReader(BytesIO(render(local, templates, "0.1.0"))).pages[1].extract_text().split())
     assert "electrode of the relay's own" not in card
+
+
+def test_page_one_says_how_high_metalwork_may_stand_and_what_a_joint_may_burn(study, sample, templates):
+    first = " ".join(PdfReader(BytesIO(render(study, templates, "0.1.0"))).pages[0].extract_text().split())
+    board = study.site.boards[0].name
+    assert f"Metalwork of {board} may stand at up to 151.3 V to remote earth (PEN break at {board})" in first
+    assert "above 50 V in 75.0 % of the load states; this relay is no protection against electric shock." in first
+    assert f"A loose joint in the neutral may burn up to 336 W and no stage trips ({board})." in first
+    plain = " ".join(PdfReader(BytesIO(render(sample.study(), templates, "0.1.0"))).pages[0].extract_text().split())
+    assert "Metalwork of" not in plain
+    assert "A loose joint" not in plain
 
 
 def test_without_joints_and_touch_volts_the_pages_say_so(sample, templates):

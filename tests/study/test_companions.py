@@ -1,5 +1,7 @@
 """What is no lost neutral: volts worked by hand, and the first cause named for many readings as for each alone."""
 
+from pathlib import Path
+
 import numpy as np
 import pytest
 
@@ -9,6 +11,7 @@ from relaycfg.study import check, read_meter
 from relaycfg.study.companions import kind_of
 from relaycfg.study.reading import first_causes
 from tests.cautions import bench
+from tests.study import yard
 
 U0, BETWEEN = 230.0, 230 * 3**0.5
 STATES = 30
@@ -127,3 +130,53 @@ def test_the_first_cause_of_many_readings_is_that_of_each(with_lines: bool) -> N
     ]
     assert first_causes(volts, l_l, U0) == one_by_one
     assert len(set(one_by_one)) > 8
+
+
+def fed(folder: Path, supply: str, kind: str = "shunt", coil: str = "auxiliary", volts: str = "[19, 29]") -> Companions:
+    """The star of the other tests with that relay supply and coil."""
+    head, _, rest = yard.RELAY.partition("supply = ")
+    tail = rest.partition("output_s")[2]
+    hung = f'{{ kind = "{kind}", from = "{coil}", range_v = {volts} }}'
+    relay = f"{head}supply = {supply}\ntrip_coil = {hung}\noutput_s{tail}"
+    site = bench.star(folder, relay=relay)
+    stages = [bench.stage("undervoltage", 1, 185.0, 2.0), bench.stage("displacement", 1, 40.0, 0.5)]
+    found = check(site, bench.settings(site, *stages), STATES, 1).companions
+    assert found is not None
+    return found
+
+
+def test_no_stage_operates_while_the_relay_is_unfed(tmp_path: Path) -> None:
+    # By hand: with L1 or L2 lost the relay's L1-L2 is 230 V, below 300 V; with L3 lost it is 398 V. One state in three
+    # loses each line.
+    line = named(fed(tmp_path, '{ from = "L1-L2", range_v = [300, 460] }'), "line lost upstream, motors off")
+    assert (line.unfed_share.count, line.unfed_share.of) == (2 * STATES // 3, STATES)
+    if line.l_l_v[0] > 300:
+        assert (line.unfed, [o.stage for o in line.operates]) == ("", ["59N stage 1", "27 stage 1"])
+    else:
+        assert (line.unfed, line.operates) == ("relay unfed (230 V)", ())
+    assert line.displaced  # it does operate where L3 is the lost one
+
+
+def test_a_relay_that_no_state_of_a_pattern_feeds_is_shown_without_stages(tmp_path: Path) -> None:
+    # By hand: three lines at 70 % leave 0.7 x 398 = 279 V between them, one line at 70 % no pair below 340 V.
+    found = fed(tmp_path, '{ from = "L1-L2", range_v = [300, 460] }')
+    all_three, one = named(found, "dip, three lines"), named(found, "dip, one line")
+    assert (all_three.unfed, all_three.operates, all_three.displaced) == ("relay unfed (279 V)", (), False)
+    assert all_three.unfed_share.count == STATES
+    assert (one.unfed, one.unfed_share.count) == ("", 0)
+    assert [o.stage for o in one.operates] == ["27 stage 1"]
+
+
+def test_a_coil_above_its_range_keeps_stages_off_and_a_release_below_its_range_opens_by_itself(tmp_path: Path) -> None:
+    # The star worked by hand: 172.5 V on L1 and 263.5 V on L2 with the neutral lost.
+    auxiliary = '{ from = "auxiliary", range_v = [19, 29] }'
+    coil = fed(tmp_path / "coil", auxiliary, "shunt", "L2-N", "[195, 253]").patterns[0]
+    release = fed(tmp_path / "release", auxiliary, "undervoltage release", "L1-N", "[180, 253]").patterns[0]
+    for words, begins, volts in (
+        (coil.unfed, "coil above its range", 263.5),
+        (release.unfed, "release opens by itself", 172.5),
+    ):
+        told, _, figure = words.removesuffix(" V)").rpartition(" (")
+        assert told == begins
+        assert float(figure) == pytest.approx(volts, abs=0.6)  # printed to the whole volt
+    assert coil.operates == release.operates == ()

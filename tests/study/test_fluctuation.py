@@ -232,3 +232,27 @@ def test_no_course_is_dropped(tmp_path):
         assert {t.share.of for t in (*p.stages, p.any_stage)} == {p.fluctuating.of} == {50}
         assert p.silent <= p.fluctuating.count
         assert p.any_stage.share.count >= max(t.share.count for t in p.stages)
+
+
+@pytest.mark.parametrize(("delay_s", "course_s", "possible"), [(1.0, 5.0, True), (7.0, 9.0, True), (20.0, 12.0, False)])
+def test_courses_last_until_the_slowest_stage_could_have_cleared(tmp_path, delay_s, course_s, possible):
+    # By hand: 7 s and some 0.2 s of its error, measuring and switching, with one second to spare, is whole seconds: 9.
+    site = star(tmp_path, "")
+    slow = Stage(Function.OVERVOLTAGE, 1, True, 255.0, delay_s, 0.97, quantity="l-n")
+    judged = check(site, replace(derive(site, 50, 1).settings, stages=(slow,)), 50, 1)
+    assert judged.after_break is not None
+    assert judged.after_break.course_s == course_s
+    main = next(p for p in judged.after_break.places if p.at == "Main")
+    assert [t.possible for t in main.stages] == [main.any_stage.possible] == [possible]
+    assert main.any_stage.share.count == (main.any_stage.share.of if possible else 0)
+
+
+def test_a_stage_that_needs_longer_than_the_course_brings_no_warning_of_it(tmp_path):
+    # The site of the warning above, with a stage of which the course can say nothing.
+    keys = 'kind = "electronics"\ncutout_pu = 0.5\nrestart_s = 1.0\nband_pu = [0.7, 1.2]\n'
+    site = star(tmp_path, keys)
+    late = Stage(Function.OVERVOLTAGE, 1, True, 300.0, 20.0, 0.97, quantity="l-n")
+    judged = check(site, replace(derive(site, 50, 1).settings, stages=(late,)), 50, 1)
+    assert judged.after_break is not None
+    assert judged.after_break.places[0].silent > 0
+    assert not [f for f in judged.findings if "courses in which loads drop out" in f.sentence]

@@ -141,3 +141,11 @@ def test_named_loads_are_on_at_their_demand_beside_what_is_always_on(tmp_path: P
 def test_a_name_of_no_load_state_is_refused(tmp_path: Path) -> None:
     with pytest.raises(ValueError, match="no load state is called 'all'"):
         breaks(site(tmp_path), samples=10, seed=1, state="all")
+
+
+def test_a_load_that_takes_nothing_is_no_switch(tmp_path: Path) -> None:
+    """Legal: demand 0. Nothing is left to switch behind the break, and the idle lines show the volts that stand."""
+    made = site(tmp_path, loads=load("Shed", "L1-N", 2.0, "spare"))
+    made = replace(made, loads=tuple(replace(x, demand=0.0) for x in made.loads))
+    found = highest_voltage(made, Network(made), healthy_emf(made), "Shed")
+    assert (found.switchable, found.how) == (0, "nothing to switch")

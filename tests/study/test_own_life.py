@@ -160,3 +160,13 @@ def test_a_neutral_pole_out_of_order_is_a_lost_neutral_behind_the_switch(tmp_pat
     assert poles.early_harmful.count == 0  # no step of the curve is shorter than the spread of the poles, 0.02 s
     assert poles.after_pe_v is not None
     assert poles.after_pe_v < 1.0  # nothing is left on the broken neutral that could lift it
+    assert poles.not_modelled_at == ()
+
+
+def test_metalwork_on_a_pen_without_other_users_in_the_model_has_no_figure_after_the_trip(tmp_path: Path) -> None:
+    # Neighbours on the same PEN lift it; where none is modelled, 0 V would be a statement about them.
+    site = yard.site(tmp_path, earthing="TN-C-S")
+    life = check(site, bench.settings(site, bench.stage("overvoltage", 1, 255.0, 1.0)), 50, 1).own_life
+    assert life is not None
+    assert life.poles.after_pe_v is None
+    assert "Main" in life.poles.not_modelled_at

@@ -221,7 +221,18 @@ def test_a_coil_out_of_range_does_not_count_as_clearing(tmp_path: Path) -> None:
 
 def test_a_pen_must_not_be_switched(tmp_path: Path) -> None:
     study = derive(yard.site(tmp_path, earthing="TN-C-S"), 50, 1)
-    assert any(f.about == "poles" and "a PEN is never switched" in f.sentence for f in study.findings)
+    (poles,) = [f for f in study.findings if f.about == "poles"]
+    assert poles.exception
+    assert "a PEN is never switched" in poles.sentence
+
+
+@pytest.mark.parametrize(("earthing", "poles"), [("TN-C-S", "lines"), ("TN-S", "lines and neutral")])
+def test_lines_of_a_pen_and_a_neutral_of_its_own_may_be_switched(tmp_path: Path, earthing: str, poles: str) -> None:
+    relay = yard.RELAY.replace('device = "relay.toml"', f'device = "relay.toml"\npoles = "{poles}"')
+    study = derive(yard.site(tmp_path, relay=relay, earthing=earthing), 50, 1)
+    assert study.site.relay is not None
+    assert study.site.relay.poles == poles
+    assert not [f for f in study.findings if f.about == "poles" and f.exception]
 
 
 def test_the_detection_stage_stays_above_what_the_band_permits_until_displacement_is_measured(tmp_path: Path) -> None:

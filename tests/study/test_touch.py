@@ -74,6 +74,8 @@ def test_shares_add_up_to_the_states_above_the_limit(tmp_path):
     assert {relay.within.of, relay.late.of, relay.never.of} == {by_place["Main"].above.count}
     assert all(t.above.of == 300 for t in study.touch)
     assert by_place["Shed"].relay is None
+    # No load outside the relay's switch hangs on this PEN: what stays on it is not in the model.
+    assert (relay.left_v, relay.left_board, relay.left) == (None, "", None)
 
 
 ELECTRODE = """

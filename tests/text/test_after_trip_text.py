@@ -4,6 +4,7 @@ from dataclasses import replace
 
 import pytest
 
+from relaycfg.model.break_results import Share
 from relaycfg.study import check, derive
 from relaycfg.text import check_text, derive_text
 from relaycfg.text.after_trip import after_trip
@@ -54,5 +55,33 @@ def test_a_feed_whose_range_is_not_stated_says_so(own):
     assert "(range not stated)" in text
 
 
+def test_the_pattern_misread_most_often_stands_with_both_ways_of_reading(own):
+    found = own[0].companions
+    one = replace(found.confusion[0], truth="dip", kind="other")
+    known = replace(one, with_lines=True, named_neutral=Share(3, 50, 0.0, 1.0))
+    dip = (known, replace(one, with_lines=False, named_neutral=Share(40, 50, 0.0, 1.0)))
+    rest = tuple(c for c in found.confusion if c.kind != "other")
+    text = " ".join(after_trip(replace(own[0], companions=replace(found, confusion=(*rest, *dip)))))
+    said = '"dip" is misread as one in 80.0 % where volts between lines are not measured, 6.0 % where they are'
+    assert said in " ".join(text.split())
+
+
+def test_the_courses_left_connected_are_those_of_the_worst_place(own):
+    again = own[0].reconnection
+    fast = replace(again.pumping[0], at="Yard", alike_per_hour=99.0, ends={"left connected unseen": 3})
+    worst = replace(fast, at="Shed", alike_per_hour=1.0, ends={"left connected unseen": 150})
+    text = " ".join(after_trip(replace(own[0], reconnection=replace(again, pumping=(fast, worst)))))
+    assert "up to 150 of 200 courses (Shed) end connected, unseen" in " ".join(text.split())
+
+
 def test_nothing_is_printed_of_what_was_not_studied(own):
     assert after_trip(replace(own[0], own_life=None, reconnection=None, companions=None)) == []
+
+
+def test_a_pattern_in_which_no_stage_counts_is_named_with_its_volts(own):
+    # By hand: 172.5 V on L1 with the neutral lost, below the coil's 195 V; the yard's feeds are another's.
+    text = " ".join(" ".join(after_trip(own[1])).split())
+    unfed = [p for p in own[1].companions.patterns if p.unfed]
+    assert f"In {len(unfed)} of {len(own[1].companions.patterns)} patterns no stage counts: neutral lost at" in text
+    assert "coil unfed (17" in text
+    assert "no stage counts" not in " ".join(after_trip(own[0]))

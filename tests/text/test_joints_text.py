@@ -33,7 +33,7 @@ def heated(study):
 def test_what_burns_unseen_stands_first_and_the_soonest_trip_beside_it(heated):
     lines = loose_joints(heated)
     head = next(line for line in lines if line.startswith("Place"))
-    assert head.index("Unseen W") < head.index("First to trip") < head.index("Most W")
+    assert head.index("W, no pickup") < head.index("First to trip") < head.index("Most W")
     (row,) = [line for line in lines if line.startswith("MB")]
     assert row.split() == ["MB", "sample", "17", "336", "59N", "stage", "1", "2.58", "336", "375", "5.04", "43.5"]
     text = " ".join(lines)
