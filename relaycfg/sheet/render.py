@@ -7,6 +7,7 @@ from io import BytesIO
 from pathlib import Path
 from typing import Any
 
+from reportlab import rl_config
 from reportlab.lib.pagesizes import A4, LETTER
 from reportlab.platypus import BaseDocTemplate, Frame, PageBreak, PageTemplate
 
@@ -32,6 +33,7 @@ from relaycfg.sheet.schedule import tests
 from relaycfg.sheet.sight import sight
 from relaycfg.sheet.wording import Wording
 
+rl_config.useA85 = 0  # streams as they are: a fifth smaller, and no time spent on spelling them in letters
 SIDE, TOP, BOTTOM = 48.0, 56.0, 48.0
 SECTIONS: dict[str, Callable[[Ink], Flow]] = {
     "decision": decision,
