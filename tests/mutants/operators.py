@@ -1,5 +1,6 @@
 """Mutation operators: a choice of cosmic-ray's own, and those of a program of phasors."""
 
+from abc import abstractmethod
 from collections.abc import Iterator
 from typing import Any, ClassVar
 
@@ -31,9 +32,9 @@ TWINS = {a: b for pair in PAIRS.split(", ") for a, b in (pair.split(), pair.spli
 class Rewrite(Operator):
     """Replaces a node by other text; a subclass gives the texts."""
 
+    @abstractmethod
     def texts(self, node: Any) -> list[str]:
         """Texts that may stand in the node's place."""
-        raise NotImplementedError
 
     def mutation_positions(self, node: Any) -> Iterator[tuple[Any, Any]]:
         """One position a text."""
